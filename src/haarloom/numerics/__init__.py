@@ -1,0 +1,1 @@
+"""From the exact transfer matrix to numbers: solvers, bounds, proofs, series, scans."""

@@ -1,0 +1,87 @@
+"""The site weight as numbers on index arrays: ⟨r|W|s⟩ = Σ_c w_c N_{cs}^r."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from functools import lru_cache
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from haarloom.exceptions import ConvergenceError
+from haarloom.numerics.fusion import FusionPattern, dense_fusion_pattern, fusion_pattern
+
+if TYPE_CHECKING:
+    from haarloom.actions.protocols import SiteWeight
+    from haarloom.algebra.irrep import Irrep
+
+__all__ = ["SiteComponents", "negligible_beyond", "outward_reach", "site_components"]
+
+TAIL = 1e-9
+"""An infinite W counts as ending where the rest of its character sum is below this part of sup|W|."""
+
+
+@dataclass(frozen=True, eq=False)
+class SiteComponents:
+    """Irreps of W's expansion that matter on a basis, and where their fusion is not zero."""
+
+    site: SiteWeight
+    support: tuple[Irrep, ...]
+    pattern: FusionPattern
+
+    def coefficients(self, values: Mapping[str, Any]) -> tuple[NDArray[Any], NDArray[np.float64]]:
+        """w_c and their errors, each of shape broadcast(values) + (C,)."""
+        return self.site.coefficients_at(self.support, values)
+
+    def elements(self, coefficients: NDArray[Any]) -> NDArray[Any]:
+        """⟨r|W|s⟩ at the places of the pattern, shape (..., m)."""
+        return self.pattern.combined(coefficients)
+
+
+@lru_cache(maxsize=48)
+def site_components(site: SiteWeight, cutoff: int, outer: int) -> SiteComponents:
+    """Fusion of W between kets with Σ s ≤ cutoff and bras with Σ r ≤ outer.
+
+    For an infinite W every irrep c with Σ c ≤ cutoff + outer enters: no other can connect a ket
+    and a bra of these sets, so that nothing is cut off inside.
+    """
+    group = site.group
+    if site.finite:
+        support = tuple(site.support())
+        return SiteComponents(site, support, fusion_pattern(support, group.rank, cutoff, outer))
+    support = tuple(group.irreps(cutoff + outer))
+    return SiteComponents(site, support, dense_fusion_pattern(group, cutoff, outer))
+
+
+def outward_reach(site: SiteWeight, cutoff: int, values: Mapping[str, Any]) -> int:
+    """How many steps of Σ a_i beyond the basis the coupling of W is followed.
+
+    All of it for a finite W; for an infinite one as far as its tail is not negligible, at most as
+    far again as the basis itself.
+    """
+    if site.finite:
+        return negligible_beyond(site, values, 0.0)
+    return min(negligible_beyond(site, values, TAIL), max(cutoff, 2))
+
+
+def negligible_beyond(site: SiteWeight, values: Mapping[str, Any], part: float) -> int:
+    """Σ c beyond which the characters of W add up to less than this part of sup|W|.
+
+    Raises
+    ------
+    ConvergenceError
+        If 200 steps do not suffice.
+    """
+    reach = site.reach(values)
+    if reach is not None:
+        return int(reach)
+    size = float(np.max(site.norm_bound(values)))
+    for steps in range(1, 200):
+        if float(np.max(site.tail_bound(steps, values))) <= part * size:
+            return steps
+    raise ConvergenceError(
+        f"the characters of the site weight do not die out within Σ a_i = 200 at {dict(values)}: "
+        "its parameters are too close to the edge of their domain; move them inwards."
+    )

@@ -1,0 +1,61 @@
+"""Continuous labels for levels along a path, through crossings and complex mergers."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+__all__ = ["tracked"]
+
+
+def tracked(values: NDArray[Any]) -> NDArray[np.int64]:
+    """Permutation at each point that makes every level a continuous branch.
+
+    Each step matches the levels to those extrapolated from the two points before, so that the sum
+    of squared distances is smallest. Where two real levels merge into a complex pair either may
+    take either branch: the one listed first gets the partner with Im > 0.
+
+    Parameters
+    ----------
+    values
+        Masses or eigenvalues, shape (M, m), in any order at each point.
+
+    Returns
+    -------
+    int array, shape (M, m): ``values[i, order[i]]`` follows the branches, which start in the order
+    of the first point.
+    """
+    from scipy.optimize import linear_sum_assignment
+
+    points, count = values.shape
+    order = np.empty((points, count), dtype=np.int64)
+    if points:
+        order[0] = np.arange(count)
+    for i in range(1, points):
+        last = values[i - 1, order[i - 1]]
+        before = values[i - 2, order[i - 2]] if i > 1 else last
+        # a merger has a square root in it: extrapolating past one would overshoot
+        guess = last + np.where(np.abs(last - before) < 0.5 * _gaps(last), last - before, 0.0)
+        cost = np.abs(guess[:, None] - values[i][None, :]) ** 2
+        order[i] = linear_sum_assignment(cost)[1]
+        _upper_first(values[i], order[i], last)
+    return order
+
+
+def _gaps(values: NDArray[Any]) -> NDArray[np.float64]:
+    """Distance of each value to its nearest neighbour."""
+    apart = np.abs(values[:, None] - values[None, :])
+    np.fill_diagonal(apart, np.inf)
+    return np.asarray(apart.min(axis=1))
+
+
+def _upper_first(values: NDArray[Any], order: NDArray[np.int64], last: NDArray[Any]) -> None:
+    """Give a freshly made pair its branches: the first listed the one with Im > 0."""
+    fresh = np.flatnonzero((last.imag == 0) & (values[order].imag != 0))
+    for one in fresh:
+        for other in fresh[fresh > one]:
+            upper, lower = values[order[one]], values[order[other]]
+            if upper == np.conj(lower) and upper.imag < 0:
+                order[one], order[other] = order[other], order[one]

@@ -1,0 +1,50 @@
+"""Real or complex: what the error of each level allows to say."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+__all__ = ["COMPLEX", "PAIR", "REAL", "UNDECIDED", "verdicts_from"]
+
+REAL = "real"
+PAIR = "complex pair"
+COMPLEX = "complex"
+UNDECIDED = "undecided"
+
+
+def verdicts_from(
+    values: NDArray[Any],
+    errors: NDArray[np.float64],
+    everything: NDArray[Any],
+    real: bool,
+    hermitian: bool | NDArray[np.bool_],
+) -> NDArray[np.str_]:
+    """One verdict for each level beyond λ_0.
+
+    A disc that is centred on the real axis and holds one eigenvalue of a real T holds a real one:
+    a complex one would bring its conjugate along.
+
+    Parameters
+    ----------
+    values, errors
+        Leading eigenvalues and radii, shape (..., L).
+    everything
+        All eigenvalues that were computed, shape (..., m), for the count inside each disc.
+    real, hermitian
+        Whether T is real, and whether (at each point of a batch) it is Hermitian.
+
+    Returns
+    -------
+    Array of words, shape (..., L − 1).
+    """
+    centres, radii = values[..., 1:], errors[..., 1:]
+    off_axis = np.abs(np.imag(centres)) > radii
+    symmetric = np.broadcast_to(np.asarray(hermitian)[..., None], centres.shape)
+    if not real:
+        return np.select([symmetric, off_axis], [REAL, COMPLEX], UNDECIDED)
+    near = np.abs(everything[..., None, :] - centres[..., :, None]) <= radii[..., :, None]
+    on_axis = (near.sum(axis=-1) == 1) & (np.imag(centres) == 0) & np.isfinite(radii)
+    return np.select([symmetric, off_axis, on_axis], [REAL, PAIR, REAL], UNDECIDED)

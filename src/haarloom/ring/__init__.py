@@ -1,0 +1,1 @@
+"""The ring station: basis, ring model, symbolic transfer matrix, derivations."""

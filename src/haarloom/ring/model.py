@@ -1,0 +1,133 @@
+"""The ring model: a link weight, a site weight, and everything that follows from the two."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING, Any
+
+import sympy
+
+from haarloom.exceptions import GroupError, ParameterError
+from haarloom.ring.basis import irrep_basis
+from haarloom.ring.transfer import TransferMatrix, build_transfer_matrix
+
+if TYPE_CHECKING:
+    from haarloom.actions.protocols import LinkWeight, SiteWeight
+    from haarloom.algebra.group import SU
+    from haarloom.algebra.irrep import Irrep
+    from haarloom.numerics.spectrum import Spectrum
+
+__all__ = ["RingModel"]
+
+
+@dataclass(frozen=True)
+class RingModel:
+    """Sites on a ring, one Polyakov loop each, joined by a link weight.
+
+    Its transfer matrix is T = K^{1/2} W K^{1/2} in the orthonormal basis of irreducible
+    characters, T_rs = √k_r ⟨r|W|s⟩ √k_s, and a ring of S sites has Z = Tr T^S.
+
+    Parameters
+    ----------
+    link
+        Weight between neighbouring loops, e.g. ``heat_kernel(G, "t")``.
+    site
+        Weight of the matter on a site, e.g. ``static_fermions(G, "z")``; weights multiply.
+
+    Raises
+    ------
+    GroupError
+        If link and site belong to different groups.
+
+    Examples
+    --------
+    >>> import haarloom as hl
+    >>> G = hl.SU(3)
+    >>> model = hl.RingModel(hl.heat_kernel(G, "t"), hl.static_fermions(G, "z"))
+    >>> model.transfer_matrix(cutoff=1)["1", "3bar"]
+    z*exp(-2*t/3)
+    """
+
+    link: LinkWeight
+    site: SiteWeight
+
+    def __post_init__(self) -> None:
+        for role, weight, attribute in (
+            ("link", self.link, "largest_outside"),
+            ("site", self.site, "norm_bound"),
+        ):
+            if not hasattr(weight, attribute):
+                raise ParameterError(
+                    f"{role} = {weight!r} is no {role} weight: "
+                    f"build one with the functions of haarloom.actions, and pass link first, site second."
+                )
+        if self.link.group != self.site.group:
+            raise GroupError(
+                f"the link weight lives on {self.link.group}, the site weight on {self.site.group}: "
+                "build both on the same group."
+            )
+
+    @property
+    def group(self) -> SU:
+        """The gauge group."""
+        return self.link.group
+
+    @property
+    def parameters(self) -> tuple[sympy.Symbol, ...]:
+        """The symbols that need values before a number comes out, sorted by name."""
+        symbols = {symbol.name: symbol for symbol in (*self.link.parameters, *self.site.parameters)}
+        return tuple(symbols[name] for name in sorted(symbols))
+
+    def basis(self, cutoff: int) -> tuple[Irrep, ...]:
+        """The irreps with Σ a_i ≤ cutoff, in the order of the matrix rows."""
+        return irrep_basis(self.group, cutoff)
+
+    def with_link(self, link: LinkWeight) -> RingModel:
+        """The same matter with another gauge action."""
+        return replace(self, link=link)
+
+    def with_site(self, site: SiteWeight) -> RingModel:
+        """The same gauge action with other matter."""
+        return replace(self, site=site)
+
+    def transfer_matrix(self, cutoff: int) -> TransferMatrix:
+        """The exact transfer matrix on the irreps with Σ a_i ≤ cutoff.
+
+        Raises
+        ------
+        ParameterError
+            If the cutoff is not a whole number ≥ 0.
+        SizeError
+            If the symbolic matrix would not fit; the message states its size.
+        """
+        return build_transfer_matrix(self, self.basis(cutoff))
+
+    def spectrum(self, levels: int = 6, cutoff: int | None = None, **values: Any) -> Spectrum:
+        """Leading eigenvalues and masses, each with its error.
+
+        Parameters
+        ----------
+        levels
+            Number of eigenvalues, the leading one included.
+        cutoff
+            Keep the irreps with Σ a_i ≤ cutoff; chosen from the truncation bound when left out.
+        **values
+            A number for every name in ``parameters``.
+
+        Raises
+        ------
+        MissingValueError, ParameterError, SizeError
+            As the numerics station says; see :func:`haarloom.numerics.spectrum.spectrum`.
+        """
+        from haarloom.numerics.spectrum import spectrum
+
+        return spectrum(self, levels=levels, cutoff=cutoff, **values)
+
+    def __repr__(self) -> str:
+        names = ", ".join(symbol.name for symbol in self.parameters)
+        return f"RingModel({self.link!r}, {self.site!r}; parameters: {names or 'none'})"
+
+    def _repr_latex_(self) -> str:
+        from haarloom.ring.faces import model_latex
+
+        return model_latex(self)

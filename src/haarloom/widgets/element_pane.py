@@ -1,0 +1,194 @@
+"""The transfer matrix as a grid, and how each of its elements comes about."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from html import escape
+from typing import TYPE_CHECKING, Any
+
+import ipywidgets
+import sympy
+import traitlets
+
+from haarloom.exceptions import ParameterError, SizeError
+from haarloom.widgets.copy_code import call, model_lines, values_text
+from haarloom.widgets.derivation_view import DerivationView, derivation_html
+from haarloom.widgets.fields import Field, section
+from haarloom.widgets.grid import MatrixGrid
+from haarloom.widgets.pane import Pane, column
+from haarloom.widgets.parameters import checked_start, ranges_of
+from haarloom.widgets.sliders import ValueSliders
+
+if TYPE_CHECKING:
+    from haarloom.ring.derivation import Derivation
+    from haarloom.ring.model import RingModel
+    from haarloom.ring.replay import Verification
+    from haarloom.ring.transfer import TransferMatrix
+
+__all__ = ["ElementPane"]
+
+MOST_ROWS = 100
+"""Largest grid: 10,000 cells are what a page draws at once and an eye still scans."""
+
+
+class ElementPane(Pane):
+    """The transfer matrix T_rs as a grid of r against s; choosing an element opens its derivation.
+
+    Parameters
+    ----------
+    model
+        The ring model.
+    cutoff
+        Irreps with Σ a_i ≤ cutoff.
+    element
+        Names of the row and the column whose derivation is open.
+    values
+        Numbers for the parameters, for the sizes of the elements; where left out, some inside the
+        domain.
+    ranges
+        {name: (lowest, highest)} for the sliders.
+
+    Attributes
+    ----------
+    model, cutoff, element, values
+        Observable, and may be set.
+    transfer, derivation, verification
+        What is on the screen: the matrix, the open derivation and its replay on the torus.
+    """
+
+    name = "Transfer matrix"
+    dyes = (1, 2)
+
+    model = traitlets.Any()
+    cutoff = traitlets.Int()
+    element = traitlets.Tuple(traitlets.Unicode(), traitlets.Unicode())
+
+    transfer: TransferMatrix | None = None
+    derivation: Derivation | None = None
+    verification: Verification | None = None
+
+    def __init__(
+        self,
+        model: RingModel,
+        cutoff: int = 3,
+        element: tuple[str, str] | None = None,
+        values: Mapping[str, float] | None = None,
+        ranges: Mapping[str, tuple[float, float]] | None = None,
+    ) -> None:
+        self._ranges = dict(ranges or {})
+        self._sliders = ValueSliders(checked_start(model, values), ranges_of(model, self._ranges))
+        self._cutoff_field = Field("cutoff K", cutoff, self._read_cutoff, help="irreps with Σ a_i ≤ K")
+        self._grid = MatrixGrid()
+        self._heading = ipywidgets.HTMLMath()
+        self._heading.add_class("hl-formula")
+        self._steps = DerivationView()
+        controls = column(self._cutoff_field, self._sliders).add_class("hl-across")
+        body = ipywidgets.VBox(
+            [controls, column(self._grid), column(section("derivation"), self._heading, self._steps)]
+        )
+        super().__init__(body.add_class("hl-matrix"))
+        trivial = model.group.trivial.name
+        self.set_trait("model", model)
+        self.set_trait("cutoff", cutoff)
+        self.set_trait("element", tuple(element or (trivial, trivial)))
+        traitlets.link((self, "cutoff"), (self._cutoff_field, "value"))
+        traitlets.link((self._sliders, "values"), (self, "values"))
+        self._grid.observe(self._choose, "selected")
+        self.observe(self._follow_model, "model")
+        self.observe(self.refresh, ["cutoff", "element", "values"])
+        self.refresh()
+
+    def _read_cutoff(self, text: str) -> int:
+        if not text.strip().isdigit():
+            raise ParameterError(f"cutoff K = {text!r} is no truncation: give a whole number ≥ 0.")
+        return _drawable_cutoff(self.model, int(text))
+
+    def _follow_model(self, _: Any) -> None:
+        values = checked_start(self.model, None, keep=self.values)
+        self._sliders.rebuild(values, ranges_of(self.model, self._ranges))
+        self.refresh()
+
+    def _choose(self, change: Any) -> None:
+        row, column = change.new
+        if self.transfer and 0 <= row < len(self.transfer.basis) > column >= 0:
+            basis = self.transfer.basis
+            self.element = (basis[row].name, basis[column].name)
+
+    def _draw(self) -> None:
+        self._draw_matrix()
+        self._draw_derivation()
+        assert self.transfer is not None
+        self._grid.show_numbers(self.transfer.numeric(**self.values))
+
+    def _draw_matrix(self) -> None:
+        cutoff = _drawable_cutoff(self.model, self.cutoff)
+        if self.transfer and self.transfer.model == self.model and self.transfer.cutoff == cutoff:
+            return
+        transfer = self.model.transfer_matrix(cutoff=cutoff)
+        self._grid.show_pattern(transfer.basis, transfer.pattern())
+        self.transfer = transfer
+        size = len(transfer.basis)
+        self.status = (
+            f"{self.model.group}, cutoff {cutoff}: {size} × {size}, {len(transfer.elements)} elements not zero"
+        )
+
+    def _draw_derivation(self) -> None:
+        assert self.transfer is not None
+        bra, ket = (self.model.group.irrep(name) for name in self.element)
+        if bra not in self.transfer.basis or ket not in self.transfer.basis:
+            bra = ket = self.model.group.trivial
+            self.element = (bra.name, ket.name)
+        place = (self.transfer.basis.index(bra), self.transfer.basis.index(ket))
+        if self._grid.selected != place:
+            self._grid.selected = place
+        shown = self.derivation
+        if shown and (shown.model, shown.bra, shown.ket) == (self.model, bra, ket):
+            return
+        derivation = self.transfer.derivation(bra, ket)
+        self.verification = self._steps.show(derivation)
+        self.derivation = derivation
+        self._heading.value = f"$\\displaystyle {_element_latex(derivation)}$"
+
+    def _source(self) -> str:
+        row, column = (f'"{name}"' for name in self.element)
+        pane = call(
+            "hl.ElementPane",
+            "model",
+            cutoff=str(self.cutoff),
+            element=f"({row}, {column})",
+            values=values_text(self.values),
+        )
+        return "\n".join(
+            [
+                *model_lines(self.model),
+                f"T = model.transfer_matrix(cutoff={self.cutoff})",
+                f"derivation = T.derivation({row}, {column})",
+                "verification = derivation.verify()",
+                f"pane = {pane}",
+                "pane",
+            ]
+        )
+
+    def _facts_text(self) -> str:
+        return f"  {self.derivation!r}\n  {self.verification!r}" if self.derivation else ""
+
+    def _facts_html(self) -> str:
+        if not self.derivation:
+            return ""
+        heading = f"<p>$\\displaystyle {escape(_element_latex(self.derivation))}$</p>"
+        return heading + derivation_html(self.derivation, self.verification)
+
+
+def _drawable_cutoff(model: RingModel, cutoff: int) -> int:
+    size = model.group.count_irreps(cutoff)
+    if size > MOST_ROWS:
+        raise SizeError(
+            f"cutoff K = {cutoff} means {size:,} irreps; a grid shows at most {MOST_ROWS}: take a smaller "
+            f"cutoff here, or work with model.transfer_matrix(cutoff={cutoff}) in a cell."
+        )
+    return cutoff
+
+
+def _element_latex(derivation: Derivation) -> str:
+    bracket = rf"\langle {derivation.bra.latex()}|T|{derivation.ket.latex()}\rangle"
+    return f"{bracket} = {sympy.latex(derivation.element)}"

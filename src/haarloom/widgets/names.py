@@ -1,0 +1,35 @@
+"""Names of irreps and parameters as short Unicode text, for labels that no MathJax reaches."""
+
+from __future__ import annotations
+
+from sympy.printing.pretty.pretty_symbology import pretty_symbol
+
+__all__ = ["irrep_face", "parameter_face"]
+
+_OVERLINE = "\N{COMBINING OVERLINE}"
+
+
+def irrep_face(name: str) -> str:
+    """``"15'bar"`` as digits with an overline and a prime sign; other names as they are.
+
+    Examples
+    --------
+    >>> irrep_face("10bar") == "1\\N{COMBINING OVERLINE}0\\N{COMBINING OVERLINE}"
+    True
+    """
+    stem = name.removesuffix("bar")
+    if stem == name:
+        return name.replace("'", "\N{PRIME}")
+    barred = "".join(letter + _OVERLINE if letter.isalnum() else letter for letter in stem)
+    return barred.replace("'", "\N{PRIME}")
+
+
+def parameter_face(name: str) -> str:
+    """``"beta"`` as β, ``"zbar"`` as z with an overline.
+
+    Examples
+    --------
+    >>> parameter_face("beta")
+    'β'
+    """
+    return str(pretty_symbol(name))

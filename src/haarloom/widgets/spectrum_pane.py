@@ -1,0 +1,294 @@
+"""Masses against a parameter and in the complex plane."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from time import perf_counter
+from typing import TYPE_CHECKING, Any
+
+import ipywidgets
+import numpy as np
+import traitlets
+
+from haarloom.exceptions import HaarloomError, ParameterError, SizeError
+from haarloom.numerics.branches import MassBranches, masses_along
+from haarloom.numerics.faces import spectrum_html
+from haarloom.widgets.copy_code import call, model_lines, number_text, values_text
+from haarloom.widgets.fields import Field, section
+from haarloom.widgets.masses_chart import MassesChart
+from haarloom.widgets.names import parameter_face
+from haarloom.widgets.pane import Pane, column
+from haarloom.widgets.parameters import checked_start, ranges_of
+from haarloom.widgets.plane_chart import PlaneChart
+from haarloom.widgets.sliders import ValueSliders
+
+if TYPE_CHECKING:
+    from haarloom.numerics.spectrum import Spectrum
+    from haarloom.ring.model import RingModel
+
+__all__ = ["SpectrumPane"]
+
+POINTS = 200
+"""Points of a scan: one every two or three pixels of the chart."""
+
+MOST_IRREPS = 250
+"""Largest basis for a scan: 200 matrices of that size take some seconds and 100 MB."""
+
+
+class SpectrumPane(Pane):
+    """Screening masses of a model: Re m and Im m against one parameter, and the current point.
+
+    Parameters
+    ----------
+    model
+        The ring model.
+    values
+        The current point; sensible numbers where left out.
+    scan
+        Name of the parameter along the horizontal axis.
+    span
+        Its lowest and highest value.
+    cutoff
+        K of the basis Σ a_i ≤ K, or None for the one that the truncation bound asks for.
+    levels
+        Eigenvalues, the leading one included: one more than the masses on the screen.
+    ranges
+        {name: (lowest, highest)} for the sliders.
+
+    Attributes
+    ----------
+    model, values, scan, span, cutoff, levels
+        Observable, and may be set.
+    spectrum
+        The spectrum at the current point.
+    branches
+        The masses along the scan, as continuous branches.
+    stretches
+        Ends of the stretches of the scan on which the lowest mass is one of a complex pair.
+    """
+
+    name = "Spectrum"
+    dyes = (2, 4)
+
+    model = traitlets.Any()
+    scan = traitlets.Unicode()
+    span = traitlets.Tuple(traitlets.Float(), traitlets.Float())
+    cutoff = traitlets.Int(None, allow_none=True)
+    levels = traitlets.Int(6)
+
+    spectrum: Spectrum | None = None
+    branches: MassBranches | None = None
+    stretches: tuple[tuple[float, float], ...] = ()
+
+    def __init__(
+        self,
+        model: RingModel,
+        values: Mapping[str, float] | None = None,
+        scan: str | None = None,
+        span: tuple[float, float] | None = None,
+        cutoff: int | None = 6,
+        levels: int = 6,
+        ranges: Mapping[str, tuple[float, float]] | None = None,
+    ) -> None:
+        self._ranges = dict(ranges or {})
+        self._scanned: tuple[Any, ...] | None = None
+        bounds = ranges_of(model, self._ranges)
+        start = checked_start(model, values)
+        scan = scan if scan is not None else _preferred_scan(start)
+        self._build(start, bounds, scan, span or bounds.get(scan, (0.0, 1.0)), cutoff)
+        super().__init__(self._layout())
+        self.set_trait("model", model)
+        self.set_trait("levels", levels)
+        self._connect()
+        self.refresh()
+
+    def _build(
+        self,
+        start: Mapping[str, float],
+        bounds: Mapping[str, tuple[float, float]],
+        scan: str,
+        span: tuple[float, float],
+        cutoff: int | None,
+    ) -> None:
+        self._sliders = ValueSliders(start, bounds)
+        self._scan_choice = ipywidgets.Dropdown(
+            options=_choices(start), value=scan, description="scan over", style={"description_width": "88px"}
+        )
+        self._span_field = Field(
+            "from … to", span, _read_span, show=_span_text, help="two numbers, e.g. 0 … 2"
+        )
+        self._cutoff_field = Field(
+            "cutoff K", cutoff, self._read_cutoff, show=lambda k: "auto" if k is None else str(k),
+            help="irreps with Σ a_i ≤ K; “auto”: from the truncation bound",
+        )  # fmt: skip
+        self._chart = MassesChart()
+        self._plane = PlaneChart()
+        self._table = ipywidgets.HTML().add_class("hl-scroll")
+        self._note = ipywidgets.HTML().add_class("hl-note")
+
+    def _layout(self) -> ipywidgets.Widget:
+        controls = column(
+            section("point"),
+            self._sliders,
+            section("scan"),
+            self._scan_choice,
+            self._span_field,
+            section("truncation"),
+            self._cutoff_field,
+        )
+        pictures = ipywidgets.Box([self._chart, self._plane.figure]).add_class("hl-pictures")
+        return ipywidgets.Box([controls, column(pictures, self._note, section("current point"), self._table)])
+
+    def _connect(self) -> None:
+        traitlets.link((self._sliders, "values"), (self, "values"))
+        traitlets.link((self._scan_choice, "value"), (self, "scan"))
+        traitlets.link((self._span_field, "value"), (self, "span"))
+        traitlets.link((self._cutoff_field, "value"), (self, "cutoff"))
+        self.observe(self._follow_model, "model")
+        self.observe(self.refresh, ["values", "scan", "span", "cutoff", "levels"])
+
+    def _read_cutoff(self, text: str) -> int | None:
+        word = text.strip().lower()
+        if word == "auto":
+            return None
+        if not word.isdigit():
+            raise ParameterError(f"cutoff K = {text!r} is no truncation: give a whole number ≥ 0, or auto.")
+        size = self.model.group.count_irreps(int(word))
+        if size > MOST_IRREPS:
+            raise SizeError(
+                f"cutoff K = {word} means {size:,} irreps at each of {POINTS} points; a pane that follows "
+                f"sliders is limited to {MOST_IRREPS}. Take a smaller cutoff, or model.spectrum(cutoff={word}, …)."
+            )
+        return int(word)
+
+    def _follow_model(self, _: Any) -> None:
+        values = checked_start(self.model, None, keep=self.values)
+        self._sliders.rebuild(values, ranges_of(self.model, self._ranges))
+        scan = self.scan if self.scan in values else _preferred_scan(values)
+        self._scan_choice.options = _choices(values)
+        self.scan = scan
+        self.refresh()
+
+    def _draw(self) -> None:
+        started = perf_counter()
+        spectrum = self.model.spectrum(levels=self.levels, cutoff=self.cutoff, **self.values)
+        self._draw_scan(spectrum.cutoff)
+        self._draw_point(spectrum)
+        self._sliders.pace(perf_counter() - started)
+
+    def _draw_scan(self, cutoff: int) -> None:
+        fixed = {name: value for name, value in self.values.items() if name != self.scan}
+        wanted = (self.model, self.scan, self.span, self.levels, cutoff, tuple(fixed.items()))
+        if not self.scan or wanted == self._scanned:
+            return
+        try:
+            grid = np.linspace(*self.span, POINTS)
+            branches = masses_along(self.model, self.scan, grid, self.levels, cutoff, **fixed)
+        except HaarloomError as problem:
+            self._span_field.fault = str(problem)
+            return
+        self._span_field.fault = ""
+        self.branches = branches
+        self.stretches = stretches_of_lowest(branches)
+        self._chart.draw(parameter_face(self.scan), grid, branches.masses.T, self.stretches)
+        self._plane.draw(branches.masses.T)
+        self._note.value = _scan_sentence(branches, self.stretches)
+        self._scanned = wanted
+
+    def _draw_point(self, spectrum: Spectrum) -> None:
+        self.spectrum = spectrum
+        if self.scan:
+            self._chart.mark(self.values[self.scan], spectrum.masses)
+        self._plane.mark(spectrum.masses)
+        self._table.value = _masses_table(spectrum)
+        self.status = (
+            f"{self.model.group}, cutoff {spectrum.cutoff}: {len(spectrum.basis)} irreps; "
+            "masses in units of 1/a, the inverse spatial lattice spacing"
+        )
+
+    def _source(self) -> str:
+        pane = call(
+            "hl.SpectrumPane",
+            "model",
+            values="values",
+            scan=f'"{self.scan}"',
+            span=f"({', '.join(map(number_text, self.span))})",
+            cutoff=str(self.cutoff),
+            levels=str(self.levels),
+        )
+        return "\n".join(
+            [
+                *model_lines(self.model),
+                f"values = {values_text(self.values)}",
+                f"spectrum = model.spectrum(levels={self.levels}, cutoff={self.cutoff}, **values)",
+                f"pane = {pane}",
+                "pane",
+            ]
+        )
+
+    def _facts_text(self) -> str:
+        return repr(self.spectrum) if self.spectrum else ""
+
+    def _facts_html(self) -> str:
+        return spectrum_html(self.spectrum) if self.spectrum else ""
+
+
+def _preferred_scan(values: Mapping[str, float]) -> str:
+    """The fugacity when there is one, for its masses merge; else the first parameter."""
+    return "z" if "z" in values else next(iter(values), "")
+
+
+def _choices(names: Mapping[str, float]) -> list[tuple[str, str]]:
+    return [(parameter_face(name), name) for name in names]
+
+
+def _span_text(span: tuple[float, float]) -> str:
+    return f"{span[0]:.6g} … {span[1]:.6g}"
+
+
+def _read_span(text: str) -> tuple[float, float]:
+    parts = text.replace("...", "…").replace("to", "…").split("…")
+    try:
+        low, high = (float(part) for part in parts)
+    except ValueError:
+        raise ParameterError(f"{text!r} is no range: give two numbers, e.g. 0 … 2.") from None
+    if not (np.isfinite([low, high]).all() and low < high):
+        raise ParameterError(f"{text!r} is no range: the first number must be below the second, both finite.")
+    return low, high
+
+
+def _masses_table(spectrum: Spectrum) -> str:
+    rows = "".join(
+        f"<tr><td>m<sub>{level}</sub></td><td>{mass.real:.8f}</td><td>{_imaginary(mass)}</td>"
+        f'<td>{error:.0e}</td><td class="hl-left">{verdict}</td></tr>'
+        for level, (mass, error, verdict) in enumerate(
+            zip(spectrum.masses, spectrum.error, spectrum.verdicts, strict=True), start=1
+        )
+    )
+    head = '<tr><th></th><th>Re m</th><th>Im m</th><th>error ≤</th><th class="hl-left">verdict</th></tr>'
+    return f'<table class="hl-table">{head}{rows}</table>'
+
+
+def _imaginary(mass: complex) -> str:
+    return f"{mass.imag:+.8f}".replace("-", "−") if mass.imag else "0"
+
+
+def stretches_of_lowest(branches: MassBranches) -> tuple[tuple[float, float], ...]:
+    """First and last grid value of each run of points whose lowest mass is one of a complex pair."""
+    lowest = np.argmin(branches.masses.real, axis=1)
+    paired = np.take_along_axis(branches.complex_pair, lowest[:, None], axis=1)[:, 0]
+    edges = np.diff(np.concatenate([[0], paired.astype(int), [0]]))
+    first, last = np.flatnonzero(edges == 1), np.flatnonzero(edges == -1) - 1
+    return tuple((float(branches.grid[a]), float(branches.grid[b])) for a, b in zip(first, last, strict=True))
+
+
+def _scan_sentence(branches: MassBranches, stretches: Sequence[tuple[float, float]]) -> str:
+    name = parameter_face(branches.parameter)
+    worst = f"errors along the scan ≤ {branches.error.max():.0e}"
+    if not np.isfinite(branches.error).all():
+        worst = "the cutoff is too small for a bound on part of the scan"
+    if not stretches:
+        return f"The lowest mass is nowhere one of a complex pair; {worst}."
+    parts = ", ".join(f"{a:.4g} ≤ {name} ≤ {b:.4g}" for a, b in stretches)
+    step = branches.grid[1] - branches.grid[0]
+    return f"Shaded: the lowest mass is one of a complex pair, {parts} (grid step {step:.2g}); {worst}."
