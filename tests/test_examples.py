@@ -25,5 +25,7 @@ def test_docstring_examples(name: str) -> None:
 
 
 def test_there_are_examples_to_run() -> None:
-    tried = sum(doctest.testmod(importlib.import_module(name), optionflags=FLAGS).attempted for name in MODULES)
+    tried = sum(
+        doctest.testmod(importlib.import_module(name), optionflags=FLAGS).attempted for name in MODULES
+    )
     assert tried > 50

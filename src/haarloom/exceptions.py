@@ -6,6 +6,8 @@ Every message says what was given, what is allowed, and how to mend it. Each cla
 
 from __future__ import annotations
 
+from typing import Any
+
 __all__ = [
     "ClassFunctionError",
     "ConvergenceError",
@@ -16,6 +18,7 @@ __all__ = [
     "LabelError",
     "MissingValueError",
     "ParameterError",
+    "ScanError",
     "SizeError",
     "UnknownNameError",
 ]
@@ -47,6 +50,12 @@ class MissingValueError(HaarloomError, ValueError):
 
 class ConvergenceError(HaarloomError, ValueError):
     """A series, quadrature or bound that does not close at the given values."""
+
+
+class ScanError(HaarloomError, ValueError):
+    """A scan that could not finish: what was done is in its file, and in ``partial``."""
+
+    partial: Any = None
 
 
 class SizeError(HaarloomError, ValueError):

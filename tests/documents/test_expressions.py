@@ -105,7 +105,9 @@ def test_long_sum_is_no_deep_recursion() -> None:
 
 def test_symbols_can_be_limited_and_near_names_are_offered() -> None:
     assert parse_expression("z + t", ["z", "t"]) == z + t
-    with pytest.raises(ExpressionError, match=r"'zbat' is not known here \(known: t, zbar\); did you mean 'zbar'"):
+    with pytest.raises(
+        ExpressionError, match=r"'zbat' is not known here \(known: t, zbar\); did you mean 'zbar'"
+    ):
         parse_expression("2*zbat", ["t", "zbar"])
 
 
@@ -122,7 +124,9 @@ def test_arithmetic_is_exact(a: Fraction, b: Fraction, c: Fraction, n: int) -> N
     assert parse_expression(text) == sympy.Rational((a - b) ** n / c + a * b)
 
 
-_LEAVES = st.sampled_from([x, z, t, sympy.pi, sympy.I, sympy.Rational(-3, 7), sympy.Integer(2), sympy.sqrt(3)])
+_LEAVES = st.sampled_from(
+    [x, z, t, sympy.pi, sympy.I, sympy.Rational(-3, 7), sympy.Integer(2), sympy.sqrt(3)]
+)
 _EXPRESSIONS = st.recursive(
     _LEAVES,
     lambda inner: st.one_of(

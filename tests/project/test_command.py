@@ -21,7 +21,9 @@ def complaint(capsys: pytest.CaptureFixture[str]) -> str:
     return said
 
 
-def test_notebook_is_copied_once_and_user_work_is_kept(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+def test_notebook_is_copied_once_and_user_work_is_kept(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
     shipped = first_notebook()
     copy = lab.copy_notebook(shipped, tmp_path)
     assert copy.read_bytes() == shipped.read_bytes()
@@ -48,12 +50,20 @@ def test_run_prints_masses_and_writes_tables(tmp_path: Path, capsys: pytest.Capt
     assert tex.count(r"\\") == len(rows) + 1
 
 
+@pytest.mark.parametrize("path", shipped_models(), ids=lambda path: path.name)
+def test_every_shipped_model_has_masses_with_errors(path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["run", str(path)]) == 0
+    rows = [line.split() for line in capsys.readouterr().out.splitlines() if line.split()[0].isdigit()]
+    assert len(rows) == 5
+    assert all(float(margin) < 1e-6 for _, _, _, margin, *_ in rows)
+
+
 @pytest.mark.parametrize(
     ("content", "reason"),
     [
         ("", "no JSON"),
         ("{}", "'format' is missing"),
-        (EMBER.read_text().replace('"z"', '"__import__(1)"', 1), "no known function"),
+        (EMBER.read_text().replace('"z": "z"', '"z": "__import__(1)"'), "no known function"),
         (EMBER.read_text().replace('"SU(3)"', '"SU(99)"'), "group: "),
         (EMBER.read_text().replace('"t": "1"', '"t": "-1"'), "t = -1"),
         (EMBER.read_text().replace('"t": "1",', ""), "t"),
@@ -81,7 +91,15 @@ def test_folder_that_is_a_file_is_one_line(tmp_path: Path, capsys: pytest.Captur
 
 @pytest.mark.parametrize(
     "arguments",
-    [["--port", "0"], ["--port", "x"], ["--port", "70000"], ["--colour"], ["weave"], ["run"], ["run", "a", "b"]],
+    [
+        ["--port", "0"],
+        ["--port", "x"],
+        ["--port", "70000"],
+        ["--colour"],
+        ["weave"],
+        ["run"],
+        ["run", "a", "b"],
+    ],
 )
 def test_bad_option_is_one_line(arguments: list[str], capsys: pytest.CaptureFixture[str]) -> None:
     with pytest.raises(SystemExit) as stopped:

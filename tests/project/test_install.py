@@ -29,7 +29,7 @@ try:
     def listen(message):
         if message["msg_type"] in ("stream", "execute_result", "error"):
             said.append(message["content"])
-    code = "import sys; print(hl.SU(3).irrep(1, 1).dimension, sys.prefix); hl.SU(3).irrep(1, 1).casimir(2) / 7"
+    code = "import sys; r = hl.SU(3).irrep(1, 1); print(r.dimension, sys.prefix); r.casimir(2) / 7"
     client.execute_interactive(code, timeout=60, output_hook=listen)
     print(json.dumps(said))
 finally:
@@ -118,14 +118,18 @@ def test_kernel_starts_with_haarloom_loaded_and_latex_printing(installed: Enviro
 def test_lab_settings_save_widget_state(installed: Environment) -> None:
     code = "from jupyterlab.commands import get_app_dir; print(get_app_dir())"
     settings = Path(installed.run("python", "-c", code).strip()) / "settings/overrides.d/haarloom.json"
-    assert json.loads(settings.read_text()) == {"@jupyter-widgets/jupyterlab-manager:plugin": {"saveState": True}}
+    assert json.loads(settings.read_text()) == {
+        "@jupyter-widgets/jupyterlab-manager:plugin": {"saveState": True}
+    }
 
 
 def test_notebooks_and_models_are_found(installed: Environment) -> None:
     home, notebook, models = installed.run("python", "-c", SHIPPED).splitlines()
     assert Path(home).parents[1] in {ROOT / "src", *installed.prefix.glob("lib/python*/site-packages")}
     assert Path(notebook).read_bytes() == (ROOT / "notebooks" / Path(notebook).name).read_bytes()
-    assert models.split() == sorted(path.name for path in (ROOT / "share/haarloom/models").glob("*.loom.json"))
+    assert models.split() == sorted(
+        path.name for path in (ROOT / "share/haarloom/models").glob("*.loom.json")
+    )
 
 
 def test_command_runs_a_document(installed: Environment, tmp_path: Path) -> None:
@@ -139,24 +143,24 @@ def test_command_serves_the_first_notebook(installed: Environment, tmp_path: Pat
     with socket.socket() as probe:
         probe.bind(("127.0.0.1", 0))
         port = probe.getsockname()[1]
-    process = subprocess.Popen(
-        [str(installed.prefix / "bin/haarloom"), "--no-browser", "--port", str(port)],
+    command = [str(installed.prefix / "bin/haarloom"), "--no-browser", "--port", str(port)]
+    with subprocess.Popen(
+        command,
         cwd=tmp_path,
         env=installed.variables,
         stdout=subprocess.PIPE,
         stderr=subprocess.DEVNULL,
         text=True,
-    )
-    try:
-        assert process.stdout is not None
-        line = process.stdout.readline()
-        address = line.removeprefix("Haarloom: ").strip()
-        assert f":{port}/lab/tree/01-" in address
-        assert _status(address) == 200
-        assert [path.name for path in tmp_path.glob("*.ipynb")] == [address.split("/")[-1].split("?")[0]]
-    finally:
-        process.send_signal(signal.SIGTERM)
-        assert process.wait(30) == 0
+    ) as process:
+        try:
+            assert process.stdout is not None
+            address = process.stdout.readline().removeprefix("Haarloom: ").strip()
+            assert f":{port}/lab/tree/01-" in address
+            assert _status(address) == 200
+            assert [path.name for path in tmp_path.glob("*.ipynb")] == [address.split("/")[-1].split("?")[0]]
+        finally:
+            process.send_signal(signal.SIGTERM)
+            assert process.wait(30) == 0
     with socket.socket() as probe:  # the server has ended with the command
         assert probe.connect_ex(("127.0.0.1", port)) != 0
 

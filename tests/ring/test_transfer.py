@@ -93,9 +93,9 @@ def test_static_bosons_give_an_exact_matrix_too():
 @pytest.mark.parametrize(
     ("call", "error", "words"),
     [
-        (lambda m: m.transfer_matrix(cutoff=-1), ParameterError, "whole number"),
-        (lambda m: m.transfer_matrix(cutoff=1.5), ParameterError, "whole number"),
-        (lambda m: m.transfer_matrix(cutoff=True), ParameterError, "whole number"),
+        (lambda m: m.transfer_matrix(cutoff=-1), ParameterError, "must be ≥ 0"),
+        (lambda m: m.transfer_matrix(cutoff=1.5), ParameterError, "an integer"),
+        (lambda m: m.transfer_matrix(cutoff=True), ParameterError, "an integer"),
         (lambda m: m.transfer_matrix(cutoff=60), SizeError, "1,891 irreps"),
         (lambda m: m.transfer_matrix(cutoff=1)["3"], LabelError, "row and a column"),
         (lambda m: m.transfer_matrix(cutoff=1)["27", "1"], ParameterError, "cutoff ≥ 4"),

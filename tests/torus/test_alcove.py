@@ -22,7 +22,9 @@ def test_schur_orthogonality(n):
     assert np.allclose((values.conj() * weights) @ values.T, np.eye(len(irreps)), atol=1e-12)
 
 
-@pytest.mark.parametrize(("n", "moments"), [(2, [1, 1, 2, 5, 14]), (3, [1, 1, 2, 6, 23]), (4, [1, 1, 2, 6, 24])])
+@pytest.mark.parametrize(
+    ("n", "moments"), [(2, [1, 1, 2, 5, 14]), (3, [1, 1, 2, 6, 23]), (4, [1, 1, 2, 6, 24])]
+)
 def test_moments_of_the_loop(n, moments):
     """∫|tr P|^{2k} counts permutations without a long increasing subsequence (Gessel 1990, Rains 1998)."""
     angles, weights = alcove_grid(hl.SU(n), 24)

@@ -6,6 +6,7 @@ by name, so ``"z"``, ``Symbol("z")`` and a value ``z=0.3`` given later all mean 
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass
@@ -118,7 +119,7 @@ def as_parameter(value: Parameter, field: Field) -> Expr:
     Parameters
     ----------
     value : int, float, complex, Fraction, Expr or str
-        A string that is a name becomes a plain symbol; one that is a decimal or a quotient becomes
+        A float becomes the exact decimal that it prints as. A string that is a name becomes a plain symbol; one that is a decimal or a quotient becomes
         an exact rational; any other goes through the safe expression grammar.
     field : Field
         Name, domain and meaning, for the check and for the message.
@@ -145,8 +146,19 @@ def _expression(value: Parameter, field: Field) -> Expr:
         )
     if isinstance(value, Fraction):
         return sympy.Rational(value.numerator, value.denominator)
-    if isinstance(value, np.number):
-        return sympy.sympify(value.item())
+    return _exact_number(value.item() if isinstance(value, np.number) else value, field)
+
+
+def _exact_number(value: int | float | complex | Expr, field: Field) -> Expr:
+    """Floats become the decimal that they print as, as everywhere in the exact stations."""
+    if isinstance(value, complex):
+        return _exact_number(value.real, field) + sympy.I * _exact_number(value.imag, field)
+    if isinstance(value, float):
+        if not math.isfinite(value):
+            raise ParameterError(
+                f"{field.name} = {value} is not allowed: {field.name} must be a finite number."
+            )
+        return sympy.Rational(repr(value))
     return sympy.sympify(value)
 
 

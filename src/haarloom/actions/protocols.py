@@ -63,9 +63,7 @@ class LinkWeight(Weight, Protocol):
     def coefficient(self, irrep: Irrep) -> Expr:
         """Exact k_r."""
 
-    def coefficients_at(
-        self, irreps: Sequence[Irrep], values: Values
-    ) -> tuple[NDArray[Any], NDArray[Any]]:
+    def coefficients_at(self, irreps: Sequence[Irrep], values: Values) -> tuple[NDArray[Any], NDArray[Any]]:
         """k_r and a bound on its error, both of shape (values of its own parameters broadcast) + (n,)."""
 
     def largest_outside(self, cutoff: int, values: Values) -> NDArray[Any]:
@@ -101,9 +99,7 @@ class SiteWeight(Weight, Protocol):
     def support(self) -> tuple[Irrep, ...]:
         """Irreps with w_c not identically zero, in basis order; raises unless finite."""
 
-    def coefficients_at(
-        self, irreps: Sequence[Irrep], values: Values
-    ) -> tuple[NDArray[Any], NDArray[Any]]:
+    def coefficients_at(self, irreps: Sequence[Irrep], values: Values) -> tuple[NDArray[Any], NDArray[Any]]:
         """w_c and a bound on its error, both of shape (values of its own parameters broadcast) + (n,)."""
 
     def norm_bound(self, values: Values) -> NDArray[Any]:

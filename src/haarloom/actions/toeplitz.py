@@ -27,7 +27,6 @@ Floats = NDArray[np.float64]
 Partitions = NDArray[np.int_]
 
 _EPS = float(np.finfo(float).eps)
-_FIXED = 120  # bits behind the point when an integer row becomes a pair of floats
 _CHUNK = 1_000_000  # matrix entries worked on at a time
 
 
@@ -39,13 +38,13 @@ class Rows:
     ----------
     high, low : ndarray, shape (N, 2·reach + 1)
         Entries as unevaluated sums of two floats.
-    log2_scale : float
-        log₂ of the product of all scales.
+    scale : int
+        Product of all scales, in the unit of the coefficients.
     """
 
     high: Floats
     low: Floats
-    log2_scale: float
+    scale: int
 
 
 def difference_rows(coefficients: Sequence[int], n: int) -> Rows:
@@ -64,22 +63,25 @@ def difference_rows(coefficients: Sequence[int], n: int) -> Rows:
     row = list(coefficients)
     columns = len(row) - 2 * n
     high, low = np.empty((n, columns)), np.empty((n, columns))
-    log2_scale = 0.0
+    scale = 1
     for i in range(n):
         first = n + (n - 1 - i) // 2
         part = row[first : first + columns]
         largest = max(map(abs, part)) or 1
-        log2_scale += math.log2(largest)
-        high[i], low[i] = _pair_of_floats(part, largest)
+        scale *= largest
+        high[i], low[i] = _pair_of_floats(part, largest, both=n > 3)
         row = [after - before for before, after in zip(row, row[1:], strict=False)]
-    return Rows(high, low, log2_scale)
+    return Rows(high, low, scale)
 
 
-def _pair_of_floats(integers: list[int], unit: int) -> tuple[Floats, Floats]:
-    fixed = [(value << _FIXED) // unit for value in integers]
-    upper = [float(value) for value in fixed]
-    lower = [float(value - int(near)) for value, near in zip(fixed, upper, strict=True)]
-    return np.ldexp(upper, -_FIXED), np.ldexp(lower, -_FIXED)
+def _pair_of_floats(integers: list[int], unit: int, both: bool) -> tuple[Floats, Floats]:
+    """value/unit as a correctly rounded float, and the rest likewise where it is wanted."""
+    upper = [value / unit for value in integers]
+    if not both:
+        return np.array(upper), np.zeros(len(upper))
+    ratios = [near.as_integer_ratio() for near in upper]
+    lower = [(v * b - a * unit) / (b * unit) for v, (a, b) in zip(integers, ratios, strict=True)]
+    return np.array(upper), np.array(lower)
 
 
 def toeplitz_sums(partitions: Partitions, points: Sequence[Rows], margin: int) -> tuple[Floats, Floats]:
@@ -122,9 +124,7 @@ def _three(partitions: Partitions, points: Sequence[Rows], margin: int) -> tuple
     return w, (8 + last.shape[2] ** 0.5) * _EPS * size
 
 
-def _minor_sum(
-    a: Floats, b: Floats, c: Floats, first: Partitions, second: Partitions, sign: float
-) -> Floats:
+def _minor_sum(a: Floats, b: Floats, c: Floats, first: Partitions, second: Partitions, sign: float) -> Floats:
     product = np.matmul((a * c[..., None]).transpose(0, 2, 1), b)
     return np.asarray(product[:, first, second] + sign * product[:, second, first])
 
@@ -199,14 +199,14 @@ def toeplitz_integers(
     for shift in shifts:
         columns = [zero + row + 1 - j + shift for j, row in enumerate(rows, start=1)]
         matrix = [[coefficient[column + i] for column in columns] for i in range(n)]
-        total += _determinant(matrix)
         # a determinant and its change under rounding are bounded by products of column sums
         sizes.append(math.prod(sum(map(abs, column)) for column in zip(*matrix, strict=True)))
+        total += _eliminated(matrix)
     return total, sizes
 
 
-def _determinant(matrix: list[list[int]]) -> int:
-    """Determinant of a small integer matrix by fraction-free elimination (E. H. Bareiss 1968)."""
+def _eliminated(matrix: list[list[int]]) -> int:
+    """Determinant of an integer matrix by fraction-free elimination in place (E. H. Bareiss 1968)."""
     n, sign, previous = len(matrix), 1, 1
     for k in range(n - 1):
         pivot = next((i for i in range(k, n) if matrix[i][k]), None)

@@ -1,1 +1,1 @@
-"""The exact station: SU(N), its irreps, their products and powers, class functions and Haar integrals. No floats."""
+"""The exact station: SU(N), irreps, products and powers, class functions, Haar integrals. No floats."""

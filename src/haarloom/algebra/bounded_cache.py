@@ -1,36 +1,40 @@
 """A least-recently-used cache whose bound is the number of terms it holds, not the number of calls.
 
-A product of two irreps may have one term or ten thousand, so a bound on calls alone would not bound the memory.
+A product of two irreps may have one term or ten thousand, so a bound on calls alone would not bound the
+memory.
 """
 
 from __future__ import annotations
 
 from collections import OrderedDict
-from collections.abc import Callable, Hashable, Mapping
+from collections.abc import Callable, Hashable, Sized
 from functools import wraps
 from threading import Lock
-from types import MappingProxyType
-from typing import Any
+from typing import Generic, ParamSpec, TypeVar
 
 __all__ = ["cached_terms"]
 
+Arguments = ParamSpec("Arguments")
+Result = TypeVar("Result", bound=Sized)
 
-def cached_terms(limit: int) -> Callable[[Callable[..., dict[Any, int]]], Callable[..., Mapping[Any, int]]]:
-    """Decorate a function that returns a dict; at most ``limit`` dict entries stay in memory, over all results.
 
-    Results come back read-only. A result larger than a quarter of the limit is returned but not kept. An entry
-    costs about 200 bytes (a tuple of small integers, its count, its slot), so a limit of 100,000 is about 20 MB.
-    The decorated function carries ``held()``, the number of entries now in memory, ``limit`` and ``clear()``.
+def cached_terms(limit: int) -> Callable[[Callable[Arguments, Result]], Callable[Arguments, Result]]:
+    """Decorate a function of positional arguments that returns a read-only mapping or a tuple.
+
+    At most ``limit`` terms stay in memory, over all results; a result larger than a quarter of the limit is
+    returned but not kept. A term of integers costs 100 to 250 bytes (a tuple of labels, its count, its slot),
+    so a limit of 100,000 is 10 to 25 MB. The decorated function carries ``held()``, the number of terms now
+    in memory, ``limit`` and ``clear()``.
     """
 
-    def decorate(function: Callable[..., dict[Any, int]]) -> Callable[..., Mapping[Any, int]]:
-        kept = _TermCache(limit)
+    def decorate(function: Callable[Arguments, Result]) -> Callable[Arguments, Result]:
+        kept: _TermCache[Result] = _TermCache(limit)
 
         @wraps(function)
-        def cached(*arguments: Hashable) -> Mapping[Any, int]:
+        def cached(*arguments: Arguments.args, **_: Arguments.kwargs) -> Result:
             found = kept.get(arguments)
             if found is None:
-                found = MappingProxyType(function(*arguments))
+                found = function(*arguments)  # type: ignore[call-arg]
                 kept.put(arguments, found)
             return found
 
@@ -40,23 +44,23 @@ def cached_terms(limit: int) -> Callable[[Callable[..., dict[Any, int]]], Callab
     return decorate
 
 
-class _TermCache:
+class _TermCache(Generic[Result]):
     """Results by arguments, the least recently used dropped first, safe under threads."""
 
     def __init__(self, limit: int) -> None:
         self.limit = limit
         self.terms = 0
-        self.results: OrderedDict[Hashable, Mapping[Any, int]] = OrderedDict()
+        self.results: OrderedDict[Hashable, Result] = OrderedDict()
         self.lock = Lock()
 
-    def get(self, key: Hashable) -> Mapping[Any, int] | None:
+    def get(self, key: Hashable) -> Result | None:
         with self.lock:
             found = self.results.get(key)
             if found is not None:
                 self.results.move_to_end(key)
             return found
 
-    def put(self, key: Hashable, result: Mapping[Any, int]) -> None:
+    def put(self, key: Hashable, result: Result) -> None:
         with self.lock:
             if key in self.results or 4 * _cost(result) > self.limit:
                 return
@@ -74,6 +78,6 @@ class _TermCache:
             self.terms = 0
 
 
-def _cost(result: Mapping[Any, int]) -> int:
-    """Entries that a result counts for: at least one, so that empty results are bounded as well."""
+def _cost(result: Sized) -> int:
+    """Terms that a result counts for: at least one, so that empty results are bounded as well."""
     return max(1, len(result))

@@ -36,8 +36,8 @@ class Branch:
 def branches(irrep: Irrep) -> tuple[Branch, ...]:
     """Restriction SU(N) → SU(N−1) × U(1); every branch occurs once.
 
-    The diagrams μ of GL(N−1) that occur interlace the rows, λ_1 ≥ μ_1 ≥ λ_2 ≥ …, each of them once (H. Weyl, *The
-    Classical Groups*, chapter V). With |μ| boxes the charge is N|μ| − (N−1)|λ|.
+    The diagrams μ of GL(N−1) that occur interlace the rows, λ_1 ≥ μ_1 ≥ λ_2 ≥ …, each of them once (H.
+    Weyl, *The Classical Groups*, chapter V). With |μ| boxes the charge is N|μ| − (N−1)|λ|.
 
     Examples
     --------

@@ -20,7 +20,7 @@ from haarloom.algebra.power_sums import characters_in_power_sums
 from haarloom.algebra.powers import validated_power
 from haarloom.algebra.products import fusion_tensor, multiply
 from haarloom.algebra.words import character_word
-from haarloom.exceptions import ClassFunctionError, GroupError
+from haarloom.exceptions import ClassFunctionError, GroupError, ParameterError
 
 if TYPE_CHECKING:
     from numpy import ndarray
@@ -29,12 +29,15 @@ if TYPE_CHECKING:
 
 __all__ = ["ClassFunction"]
 
+_MOST_SHOWN = 40
+
 
 class ClassFunction:
     """A finite combination of characters of SU(N), frozen and hashable.
 
-    Coefficients are exact SymPy expressions in expanded form, zero ones dropped, so that equality is equality of
-    functions for polynomial coefficients. Numbers and SymPy expressions count as multiples of the trivial character.
+    Coefficients are exact SymPy expressions in expanded form, zero ones dropped, so that equality is
+    equality of functions for polynomial coefficients. Numbers and SymPy expressions count as multiples of
+    the trivial character.
 
     Parameters
     ----------
@@ -61,7 +64,7 @@ class ClassFunction:
         self._fill(group, {labels: total(parts) for labels, parts in terms.items()})
 
     def _fill(self, group: SU, terms: Mapping[Labels, Expr]) -> ClassFunction:
-        ordered = sorted((labels for labels, value in terms.items() if value is not S.Zero), key=order_key)
+        ordered = sorted((labels for labels, value in terms.items() if value != 0), key=order_key)
         object.__setattr__(self, "group", group)
         object.__setattr__(self, "_terms", {labels: terms[labels] for labels in ordered})
         return self
@@ -89,10 +92,10 @@ class ClassFunction:
         return bool(self._terms)
 
     def __repr__(self) -> str:
-        shown = ", ".join(f"{labels}: {value}" for labels, value in list(self._terms.items())[:4])
+        shown = ", ".join(f"{labels}: {_brief(value)}" for labels, value in list(self._terms.items())[:4])
         return f"ClassFunction({self.group}, {{{shown}{', …' if len(self._terms) > 4 else ''}}})"
 
-    # --- content -------------------------------------------------------------------------------------------------
+    # --- content
 
     @property
     def coefficients(self) -> dict[Irrep, Expr]:
@@ -131,7 +134,9 @@ class ClassFunction:
         """Inner product ∫ dP self* other = Σ_r conj(a_r) b_r; ``real`` takes every symbol for real."""
         right = self._coerced(other)
         if right is None:
-            raise ClassFunctionError(f"{type(other).__name__} given; an inner product needs a class function.")
+            raise ClassFunctionError(
+                f"{type(other).__name__} given; an inner product needs a class function."
+            )
         common = [labels for labels in self._terms if labels in right._terms]
         return normal_form(
             Add(*(_conjugated(self._terms[labels], real) * right._terms[labels] for labels in common))
@@ -149,10 +154,12 @@ class ClassFunction:
 
     def sector(self, nality: int) -> ClassFunction:
         """The part that transforms with charge ``nality`` under the centre."""
-        kept = {labels: value for labels, value in self._terms.items() if _nality(labels) == nality % self.group.n}
+        kept = {
+            labels: value for labels, value in self._terms.items() if _nality(labels) == nality % self.group.n
+        }
         return ClassFunction.from_terms(self.group, kept)
 
-    # --- ring ----------------------------------------------------------------------------------------------------
+    # --- ring
 
     def _coerced(self, other: Any) -> ClassFunction | None:
         """The other operand as a class function of the same group, or None for foreign types."""
@@ -202,7 +209,10 @@ class ClassFunction:
         """Division by a number or a coefficient; a class function has no inverse here."""
         if isinstance(other, ClassFunction):
             return NotImplemented
-        return self * (1 / as_coefficient(other))
+        divisor = normal_form(as_coefficient(other))
+        if divisor == 0:
+            raise ParameterError("division of a class function by 0; the divisor must not vanish.")
+        return self * (1 / divisor)
 
     def __pow__(self, n: int) -> ClassFunction:
         """n-th power, n an integer ≥ 0, by repeated squaring."""
@@ -232,13 +242,13 @@ class ClassFunction:
         return self._mapped(lambda value: normal_form(value.diff(parameter, times)))
 
     def exp(self, coupling: Symbol, order: int) -> TaylorSeries:
-        """Exact Taylor expansion of exp(f) in a parameter of f, to ``order``; see :mod:`haarloom.algebra.taylor`."""
+        """Taylor expansion of exp(f) in a parameter of f, exact, each order a class function."""
         from haarloom.algebra.taylor import exponential_series
 
         return exponential_series(self, coupling, order)
 
     def log(self, coupling: Symbol, order: int) -> TaylorSeries:
-        """Exact Taylor expansion of log(f) in a parameter of f, to ``order``; see :mod:`haarloom.algebra.taylor`."""
+        """Taylor expansion of log(f) in a parameter of f, exact, each order a class function."""
         from haarloom.algebra.taylor import logarithm_series
 
         return logarithm_series(self, coupling, order)
@@ -248,7 +258,7 @@ class ClassFunction:
             self.group, {labels: change(value) for labels, value in self._terms.items()}
         )
 
-    # --- the other bases -----------------------------------------------------------------------------------------
+    # --- the other bases
 
     def in_characters(self) -> Expr:
         """The function as a SymPy expression Σ a_r χ(labels), with χ the undefined function ``chi``."""
@@ -286,7 +296,8 @@ class ClassFunction:
         angles : array of shape (..., N − 1) or (..., N)
             Eigenphases θ_j of P in radians; with N of them they must add up to 0 mod 2π.
         **values
-            A number or array for every parameter, by name; arrays broadcast against the shape ``...`` of the angles.
+            A number or array for every parameter, by name; arrays broadcast against the shape ``...`` of
+            the angles.
 
         Returns
         -------
@@ -301,15 +312,34 @@ class ClassFunction:
 
         return evaluate(self, angles, values)
 
-    # --- faces ---------------------------------------------------------------------------------------------------
+    # --- faces
 
     def latex(self) -> str:
         r"""The combination of characters in LaTeX, ``\chi_{\mathbf{8}}`` for a character."""
-        parts = [_latex_term(Irrep(self.group, labels), value) for labels, value in self._terms.items()]
-        return " + ".join(parts).replace("+ -", "- ") or "0"
+        return _latex_sum(self, self._terms)
 
     def _repr_latex_(self) -> str:
-        return f"${self.latex()}$"
+        """What a notebook shows: long sums and long coefficients cut short."""
+        shown = {labels: _shortened(value) for labels, value in list(self._terms.items())[:_MOST_SHOWN]}
+        rest = r" + \cdots" if len(self) > _MOST_SHOWN else ""
+        return f"${_latex_sum(self, shown)}{rest}$"
+
+
+def _latex_sum(function: ClassFunction, terms: Mapping[Labels, Expr]) -> str:
+    parts = [_latex_term(Irrep(function.group, labels), value) for labels, value in terms.items()]
+    return " + ".join(parts).replace("+ -", "- ") or "0"
+
+
+def _shortened(value: Expr) -> Expr:
+    """A coefficient with its first terms and an ellipsis when it has very many."""
+    if not value.is_Add or len(value.args) <= _MOST_SHOWN:
+        return value
+    return Add(*value.args[:_MOST_SHOWN], Symbol(r"\ldots"), evaluate=False)
+
+
+def _brief(value: Expr) -> str:
+    """A coefficient in full when it is short, its number of terms otherwise."""
+    return str(value) if len(value.args) <= 6 else f"<{len(value.args)} terms>"
 
 
 def _conjugated(value: Expr, real: bool) -> Expr:

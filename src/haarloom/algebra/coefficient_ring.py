@@ -1,8 +1,8 @@
 """Fast arithmetic with many symbolic coefficients at once, in a polynomial ring instead of expression trees.
 
-Every factor that is no sum, product or whole power (a symbol, exp(−4t/3), √2, …) becomes a generator. Relations
-between generators, such as exp(a)·exp(−a) = 1 or I² = −1, are restored when the result turns back into
-expressions, so the ring only ever postpones a simplification.
+Every factor that is no sum, product or whole power (a symbol, exp(−4t/3), √2, …) becomes a generator.
+Relations between generators, such as exp(a)·exp(−a) = 1 or I² = −1, are restored when the result turns back
+into expressions, so the ring only ever postpones a simplification.
 """
 
 from __future__ import annotations
@@ -43,9 +43,12 @@ def power_of_terms(terms: Terms, count: int, unit: Labels, multiply: Product) ->
 
 
 def polynomial_of_terms(
-    monomials: Mapping[tuple[int, ...], Expr], values: Sequence[Mapping[Labels, int]], unit: Labels, multiply: Product
+    monomials: Mapping[tuple[int, ...], Expr],
+    values: Sequence[Mapping[Labels, int]],
+    unit: Labels,
+    multiply: Product,
 ) -> dict[Labels, Expr]:
-    """A polynomial with coefficients ``monomials`` at class functions ``values``, by nested Horner schemes."""
+    """The polynomial with coefficients ``monomials`` at class functions ``values``, by Horner schemes."""
     normal = {exponents: normal_form(value) for exponents, value in monomials.items()}
     ring = CoefficientRing(normal.values())
     entered = ring.enter(normal)
@@ -54,7 +57,7 @@ def polynomial_of_terms(
 
 def _horner(monomials: Terms, values: Sequence[Terms], unit: Labels, multiply: Product) -> Terms:
     if not values:
-        return {unit: value for value in monomials.values()}
+        return {unit: monomials[()]} if monomials else {}
     by_power: dict[int, dict[tuple[int, ...], Any]] = {}
     for exponents, value in monomials.items():
         by_power.setdefault(exponents[0], {})[exponents[1:]] = value
@@ -135,7 +138,11 @@ def _expression(value: Any, generators: tuple[Expr, ...]) -> Expr:
         *(
             Mul(
                 QQ.to_sympy(number),
-                *(Pow(generator, power) for generator, power in zip(generators, exponents, strict=False) if power),
+                *(
+                    Pow(generator, power)
+                    for generator, power in zip(generators, exponents, strict=False)
+                    if power
+                ),
             )
             for exponents, number in value.items()
         )

@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from fractions import Fraction
+from math import isfinite
 from numbers import Integral
 from typing import Any
 
-from sympy import Add, Expr, I, Integer, Pow, Rational, Symbol, cancel, expand
+from sympy import Add, Expr, I, Integer, Pow, Rational, S, Symbol, cancel, expand
 
 from haarloom.exceptions import ClassFunctionError
 
@@ -25,7 +26,7 @@ def as_coefficient(value: Any) -> Expr:
         When the value is none of these.
     """
     if isinstance(value, Expr):
-        return value
+        return _finite(value)
     if isinstance(value, bool):
         raise ClassFunctionError(f"coefficient {value!r} given; write 1 or 0.")
     if isinstance(value, Integral):
@@ -44,6 +45,8 @@ def as_coefficient(value: Any) -> Expr:
 def _exact_decimal(value: Any) -> Expr:
     try:
         number = complex(value)
+        if not (isfinite(number.real) and isfinite(number.imag)):
+            raise ValueError
         real, imaginary = Rational(repr(number.real)), Rational(repr(number.imag))
     except (TypeError, ValueError):
         raise ClassFunctionError(
@@ -53,8 +56,14 @@ def _exact_decimal(value: Any) -> Expr:
     return real + I * imaginary
 
 
+def _finite(value: Expr) -> Expr:
+    if value.has(S.NaN, S.Infinity, S.NegativeInfinity, S.ComplexInfinity):
+        raise ClassFunctionError(f"coefficient {value} given; coefficients must be finite.")
+    return value
+
+
 def normal_form(value: Expr) -> Expr:
-    """Expanded form, in which a polynomial that vanishes is 0; quotients become one fraction in lowest terms."""
+    """Expanded form, in which a vanishing polynomial is 0; quotients become one fraction in lowest terms."""
     if value.is_Atom or not value.has(Add):
         return value
     expanded = expand(value)

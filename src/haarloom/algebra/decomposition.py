@@ -16,11 +16,14 @@ if TYPE_CHECKING:
 
 __all__ = ["Decomposition", "product_of"]
 
+_MOST_SHOWN = 60
+
 
 class Decomposition(Mapping[Irrep, int]):
     """A finite sum of irreps of one group, a read-only mapping from irrep to multiplicity in basis order.
 
-    Two decompositions are equal when they hold the same irreps with the same multiplicities, wherever they came from.
+    Two decompositions are equal when they hold the same irreps with the same multiplicities, wherever they
+    came from.
     """
 
     __slots__ = ("_terms", "factors", "group")
@@ -47,9 +50,9 @@ class Decomposition(Mapping[Irrep, int]):
         return len(self._terms)
 
     def __eq__(self, other: object) -> bool:
-        if not isinstance(other, Decomposition):
-            return NotImplemented
-        return self.group is other.group and self._terms == other._terms
+        if isinstance(other, Decomposition):
+            return self.group is other.group and self._terms == other._terms
+        return self._terms == dict(other) if isinstance(other, Mapping) else NotImplemented
 
     def __hash__(self) -> int:
         return hash((self.group.n, tuple(self._terms.items())))
@@ -130,7 +133,11 @@ class Decomposition(Mapping[Irrep, int]):
         return r" \oplus ".join(terms) or "0"
 
     def _repr_latex_(self) -> str:
-        return f"${self.latex()}$"
+        """What a notebook shows: a long sum is cut short."""
+        if len(self) <= _MOST_SHOWN:
+            return f"${self.latex()}$"
+        shown = {irrep.labels: count for irrep, count in list(self.items())[:_MOST_SHOWN]}
+        return rf"${Decomposition(self.group, shown).latex()} \oplus \cdots$"
 
 
 def product_of(group: SU, factors: Sequence[Irrep]) -> Decomposition:

@@ -56,8 +56,8 @@ def phases_to_eigenvalues(expression: Expr, n: int) -> Expr:
     Raises
     ------
     ClassFunctionError
-        When an eigenphase stands outside exp, cos and sin, or with a coefficient that is not a whole number: such a
-        function is not periodic in it.
+        When an eigenphase stands outside exp, cos and sin, or with a coefficient that is not a whole
+        number: such a function is not periodic in it.
     """
     thetas = eigenphase_symbols(n)
     if not expression.free_symbols & set(thetas):
@@ -69,7 +69,8 @@ def phases_to_eigenvalues(expression: Expr, n: int) -> Expr:
     result = expand(waves.replace(lambda part: isinstance(part, exp), lambda part: _monomial(part, n)))
     if left := result.free_symbols & set(thetas):
         raise ClassFunctionError(
-            f"{min(map(str, left))} stands outside exp, cos and sin, so the function is not periodic in it; use "
+            f"{min(map(str, left))} stands outside exp, cos and sin, so the function is not periodic "
+            "in it; use "
             f"exp(I*{min(map(str, left))})."
         )
     return result

@@ -1,7 +1,7 @@
 """Class functions as symmetric Laurent polynomials in the eigenvalues x_1 … x_N of P.
 
-Since x_1 ⋯ x_N = 1 a monomial has many spellings. Here the exponents of every monomial add up to the N-ality, so the
-adjoint of SU(3) reads 2 + Σ_{i≠j} x_i/x_j and the antifundamental x_1 x_2 + x_1 x_3 + x_2 x_3.
+Since x_1 ⋯ x_N = 1 a monomial has many spellings. Here the exponents of every monomial add up to the N-ality:
+the adjoint of SU(3) reads 2 + Σ_{i≠j} x_i/x_j, the antifundamental x_1 x_2 + x_1 x_3 + x_2 x_3.
 """
 
 from __future__ import annotations
@@ -92,7 +92,7 @@ def _check_symmetry(terms: dict[Rows, Expr], n: int) -> None:
             swapped = (*content[:i], content[i + 1], content[i], *content[i + 2 :])
             if terms.get(swapped, S.Zero) != value:
                 raise ClassFunctionError(
-                    f"the expression changes when x_{i + 1} and x_{i + 2} are exchanged, so it is no class function; "
+                    f"the expression changes when x_{i + 1} and x_{i + 2} are exchanged; "
                     f"a class function is symmetric in x_1 … x_{n}."
                 )
 

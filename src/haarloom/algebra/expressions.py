@@ -1,20 +1,19 @@
 """Class functions from ordinary SymPy expressions.
 
-Four spellings are read, alone or together: the fundamental loops (``L``, ``L^*`` or ``Lstar``, ``E_k``), traces of
-powers ``tr(P, n)``, characters ``chi(…)``, and the eigenvalues ``x_j`` or eigenphases ``theta_j`` in symmetric
-combinations. ``conjugate``, ``re``, ``im`` and even powers of ``Abs`` of them are understood. Every other symbol is
-a parameter and goes into the coefficients.
+Four spellings are read, alone or together: the fundamental loops (``L``, ``L^*`` or ``Lstar``, ``E_k``),
+traces of powers ``tr(P, n)``, characters ``chi(…)``, and the eigenvalues ``x_j`` or eigenphases ``theta_j``
+in symmetric combinations. ``conjugate``, ``re``, ``im`` and even powers of ``Abs`` of them are understood.
+Every other symbol is a parameter and goes into the coefficients.
 """
 
 from __future__ import annotations
 
-from typing import Any
-
-from sympy import Abs, Add, Expr, I, Integer, Mul, Pow, S, Symbol, conjugate, exp, expand, im, log, re
+from sympy import Abs, Add, Expr, Integer, Mul, Pow, S, Symbol, exp, expand, log
 from sympy.core.function import AppliedUndef
 
 from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.coefficient_ring import polynomial_of_terms
+from haarloom.algebra.conjugates import without_conjugates
 from haarloom.algebra.eigenphases import phases_to_eigenvalues
 from haarloom.algebra.eigenvalues import eigenvalue_symbols, terms_from_eigenvalues
 from haarloom.algebra.group import SU
@@ -22,6 +21,7 @@ from haarloom.algebra.labels import Labels
 from haarloom.algebra.loops import loop_symbols
 from haarloom.algebra.powers import adams
 from haarloom.algebra.products import multiply
+from haarloom.algebra.words import is_word, words_in
 from haarloom.exceptions import ClassFunctionError, ConvergenceError, LabelError
 
 __all__ = ["class_function_from", "haar_integral"]
@@ -39,10 +39,11 @@ def class_function_from(expression: Expr | int, group: SU) -> ClassFunction:
     Raises
     ------
     ClassFunctionError
-        When the expression is no class function: a bare ``P``, eigenvalues in no symmetric combination, a function
-        that is not polynomial in the loops.
+        When the expression is no class function: a bare ``P``, eigenvalues in no symmetric combination, a
+        function that is not polynomial in the loops.
     ConvergenceError
-        When it is one, but no finite combination of characters: ``exp(L)``, ``1/L``, ``L**n`` with a symbol n.
+        When it is one, but no finite combination of characters: ``exp(L)``, ``1/L``, ``L**n`` with a symbol
+        n.
 
     Examples
     --------
@@ -57,10 +58,11 @@ def class_function_from(expression: Expr | int, group: SU) -> ClassFunction:
         expression = Integer(expression)
     if not isinstance(expression, Expr):
         raise ClassFunctionError(
-            f"{type(expression).__name__} given; a SymPy expression in L, L^*, tr(P, n), chi(…) or x_j is needed "
+            f"{type(expression).__name__} given; a SymPy expression in L, L^*, tr(P, n), chi(…) or x_j "
+            "is needed "
             "(text is parsed by haarloom.documents.class_expressions)."
         )
-    plain = phases_to_eigenvalues(_without_conjugates(expression, group), group.n)
+    plain = phases_to_eigenvalues(without_conjugates(expression, group.n), group.n)
     if plain.free_symbols & set(eigenvalue_symbols(group.n)):
         return _from_eigenvalues(plain, group)
     return _from_words(expand(plain), group)
@@ -83,7 +85,7 @@ def haar_integral(expression: Expr, group: SU) -> Expr:
 
 def _from_words(expanded: Expr, group: SU) -> ClassFunction:
     """Sort a sum into monomials of words, then let the words become characters."""
-    words = sorted((word for word in expanded.atoms(Symbol, AppliedUndef) if _is_word(word, group)), key=str)
+    words = words_in(expanded, group.n)
     place = {word: position for position, word in enumerate(words)}
     monomials: dict[tuple[int, ...], Expr] = {}
     for term in Add.make_args(expanded):
@@ -103,28 +105,24 @@ def _from_words(expanded: Expr, group: SU) -> ClassFunction:
 
 
 def _from_eigenvalues(plain: Expr, group: SU) -> ClassFunction:
-    words = [word for word in plain.atoms(Symbol, AppliedUndef) if _is_word(word, group)]
-    spelled = {word: ClassFunction(group, _word_in_characters(word, group)).in_eigenvalues() for word in words}
+    spelled = {
+        word: ClassFunction(group, _word_in_characters(word, group)).in_eigenvalues()
+        for word in words_in(plain, group.n)
+    }
     expanded = expand(plain.xreplace(spelled))
-    for factor in (factor for term in Add.make_args(expanded) for factor in Mul.make_args(term)):
-        base, power = factor.as_base_exp()
-        if not (base in eigenvalue_symbols(group.n) and power.is_Integer):
-            _check_coefficient(factor, group)
+    for term in Add.make_args(expanded):
+        for factor in Mul.make_args(term):
+            base, power = factor.as_base_exp()
+            if not (base in eigenvalue_symbols(group.n) and power.is_Integer):
+                _check_coefficient(factor, group)
     return ClassFunction.from_terms(group, terms_from_eigenvalues(expanded, group.n))
-
-
-def _is_word(part: Expr, group: SU) -> bool:
-    if isinstance(part, AppliedUndef):
-        return part.func.__name__ in ("tr", "chi")
-    return part in loop_symbols(group.n) or part.name in ("L^*", "Lstar")
 
 
 def _word_in_characters(word: Expr, group: SU) -> dict[Labels, int]:
     if isinstance(word, AppliedUndef):
         return _trace(word, group) if word.func.__name__ == "tr" else {_character_labels(word, group): 1}
-    if word.name in ("L^*", "Lstar"):
-        return {group.antifundamental.labels: 1}
-    place = loop_symbols(group.n).index(word)
+    symbols = loop_symbols(group.n)
+    place = symbols.index(word) if word in symbols else group.rank - 1
     return {tuple(int(i == place) for i in range(group.rank)): 1}
 
 
@@ -133,7 +131,9 @@ def _trace(word: Expr, group: SU) -> dict[Labels, int]:
     if str(word.args[0]) != "P" or len(word.args) > 2:
         raise ClassFunctionError(f"{word} given; write tr(P) or tr(P, n) with the group element P.")
     if not power.is_Integer:
-        raise ConvergenceError(f"{word} given; the power must be a whole number for a finite sum of characters.")
+        raise ConvergenceError(
+            f"{word} given; only whole-number powers are finite sums of characters: tr(P, 2)."
+        )
     if power == 0:
         return {group.trivial.labels: group.n}
     start = group.fundamental if power > 0 else group.antifundamental
@@ -142,61 +142,27 @@ def _trace(word: Expr, group: SU) -> dict[Labels, int]:
 
 def _character_labels(word: Expr, group: SU) -> Labels:
     if not all(label.is_Integer for label in word.args):
-        raise LabelError(f"{word} given; the labels of a character in a class function must be whole numbers.")
+        raise LabelError(f"{word} given; the labels of a character must be whole numbers here: chi(1, 0).")
     return group.irrep(*(int(label) for label in word.args)).labels
-
-
-def _without_conjugates(expression: Expr, group: SU) -> Expr:
-    """Write conjugate, re, im and |…|² of words in the words themselves."""
-
-    def speaks(part: Expr) -> bool:
-        return any(_is_word(atom, group) for atom in part.atoms(Symbol, AppliedUndef))
-
-    def opened(part: Expr) -> Any:
-        if isinstance(part, Pow) and isinstance(part.base, Abs) and part.exp.is_even and part.exp.is_positive:
-            inside = part.base.args[0]
-            return (inside * conjugate(inside)) ** (part.exp / 2)
-        inside = part.args[0]
-        half = {re: S.Half, im: 1 / (2 * I)}[part.func]
-        return half * inside + conjugate(half * inside)
-
-    kinds = (re, im, Pow)
-    plain = expression.replace(
-        lambda part: isinstance(part, kinds) and speaks(part) and (not part.is_Pow or isinstance(part.base, Abs)),
-        lambda part: opened(part) if not part.is_Pow or part.exp.is_even else part,
-    )
-    return plain.replace(
-        lambda part: isinstance(part, conjugate) and _is_word(part.args[0], group),
-        lambda part: _conjugate_word(part.args[0], group),
-    )
-
-
-def _conjugate_word(word: Expr, group: SU) -> Expr:
-    if isinstance(word, AppliedUndef):
-        if word.func.__name__ == "chi":
-            return word.func(*reversed(word.args))
-        return word.func(word.args[0], -(word.args[1] if len(word.args) > 1 else 1))
-    symbols = loop_symbols(group.n)
-    return symbols[0] if word not in symbols else symbols[::-1][symbols.index(word)]
 
 
 def _check_coefficient(factor: Expr, group: SU) -> None:
     """A factor of the coefficient must not speak of P in any way; say in which way it does."""
     atoms = factor.atoms(Symbol, AppliedUndef)
-    names = {str(atom) for atom in atoms}
-    if "P" in names and not any(isinstance(atom, AppliedUndef) for atom in atoms):
-        raise ClassFunctionError(f"{factor} given; P is a matrix, not a class function: write tr(P) or tr(P, n).")
-    spoken = [atom for atom in atoms if _is_word(atom, group) or atom in eigenvalue_symbols(group.n)]
+    if "P" in map(str, atoms) and not any(isinstance(atom, AppliedUndef) for atom in atoms):
+        raise ClassFunctionError(
+            f"{factor} given; P is a matrix, no class function: write tr(P) or tr(P, n)."
+        )
+    spoken = [atom for atom in atoms if is_word(atom, group.n) or atom in eigenvalue_symbols(group.n)]
     if not spoken:
         return
-    infinite = isinstance(factor, (exp, log)) or (isinstance(factor, Pow) and not isinstance(factor.base, Abs))
-    if infinite:
+    if isinstance(factor, (exp, log)) or (isinstance(factor, Pow) and not isinstance(factor.base, Abs)):
         raise ConvergenceError(
-            f"{factor} is no finite combination of characters: its expansion, and with it an exact Haar integral, "
-            "does not terminate. Expand it to an order in a coupling first (ClassFunction.exp or .log), or give "
-            "the power a number ≥ 0."
+            f"{factor} given; it is no finite combination of characters, so its expansion, and with it an "
+            "exact Haar integral, does not terminate: expand it to an order in a coupling first "
+            "(ClassFunction.exp, .log), or make the power a number ≥ 0."
         )
     raise ClassFunctionError(
-        f"{factor} is not polynomial in {spoken[0]}; only sums, products and whole powers of L, L^*, tr(P, n) and "
-        "chi(…) are finite combinations of characters."
+        f"{factor} given; it is not polynomial in {spoken[0]}: only sums, products and whole powers of L, "
+        "L^*, tr(P, n) and chi(…) are finite combinations of characters."
     )

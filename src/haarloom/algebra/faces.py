@@ -40,4 +40,5 @@ def story_table(story: ProductStory, shown: int) -> str:
     rest = len(story.steps) - shown
     more = f"<tr><td>… and {rest} more steps</td></tr>" if rest > 0 else ""
     title = f"{html_name(story.left.name)} ⊗ {html_name(story.right.name)} by {escape(story.form)}"
-    return f"<table><caption>{title}</caption><tbody>{rows}{more}</tbody></table><p>{escape(story.summary())}</p>"
+    table = f"<table><caption>{title}</caption><tbody>{rows}{more}</tbody></table>"
+    return f"{table}<p>{escape(story.summary())}</p>"

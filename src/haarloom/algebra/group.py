@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any, overload
 
 from sympy import Expr, Integer
 
+from haarloom.algebra.bounded_cache import cached_terms
 from haarloom.algebra.irrep import Irrep
 from haarloom.algebra.labels import count_up_to, labels_up_to, validated_cutoff, validated_labels
 from haarloom.algebra.names import labels_from_name
@@ -76,8 +77,9 @@ class SU:
         Parameters
         ----------
         *labels
-            N − 1 integers ≥ 0, or one sequence of them, or one name such as ``"10bar"``, or an irrep of this group
-            (returned as it is). SymPy symbols among the labels give a :class:`SymbolicIrrep` instead.
+            N − 1 integers ≥ 0, or one sequence of them, or one name such as ``"10bar"``, or an irrep of
+            this group (returned as it is). SymPy symbols among the labels give a :class:`SymbolicIrrep`
+            instead.
 
         Raises
         ------
@@ -172,6 +174,6 @@ def _the_group(n: int) -> SU:
     return group
 
 
-@lru_cache(maxsize=32)
+@cached_terms(limit=200_000)
 def _irreps(group: SU, cutoff: int) -> tuple[Irrep, ...]:
     return tuple(Irrep(group, labels) for labels in labels_up_to(group.rank, cutoff))

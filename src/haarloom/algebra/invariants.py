@@ -45,8 +45,9 @@ def quadratic_casimir(labels: Labels) -> Rational:
 def cubic_casimir(labels: Labels) -> Rational:
     """C₃, the eigenvalue of d_abc T_a T_b T_c: ½ Σ l_i³ with l_i = λ_i − n/N + (N + 1)/2 − i.
 
-    It changes sign under conjugation, so of the Weyl-invariant polynomials of degree three in the traceless l only
-    the power sum can occur; the highest powers fix the factor ½. For SU(3) it is (p−q)(p+2q+3)(q+2p+3)/18.
+    It changes sign under conjugation, so of the Weyl-invariant polynomials of degree three in the traceless
+    l only the power sum can occur; the highest powers fix the factor ½. For SU(3) it is
+    (p−q)(p+2q+3)(q+2p+3)/18.
 
     >>> cubic_casimir((1, 0)), cubic_casimir((1, 1))
     (10/9, 0)

@@ -8,12 +8,14 @@ from typing import TYPE_CHECKING, Any
 from sympy import Rational
 
 from haarloom.algebra import faces, invariants
+from haarloom.algebra.drawings import Drawing, draw_weights, draw_young
 from haarloom.algebra.labels import Labels, Rows, order_key, rows_from_labels
 from haarloom.algebra.names import name_from_labels
 from haarloom.algebra.weights import dominant_weights, weights
 from haarloom.exceptions import ParameterError
 
 if TYPE_CHECKING:
+    from haarloom.algebra.branching import Branch
     from haarloom.algebra.class_function import ClassFunction
     from haarloom.algebra.decomposition import Decomposition
     from haarloom.algebra.group import SU
@@ -126,6 +128,20 @@ class Irrep:
     def dominant_weights(self) -> dict[Labels, int]:
         """The weights without negative labels, one for each Weyl orbit, with multiplicities."""
         return dominant_weights(self.labels)
+
+    def young_diagram(self) -> Drawing:
+        """The Young diagram as a picture that shows itself in a notebook; its SVG text is ``.svg``."""
+        return draw_young(self.partition, self.name)
+
+    def weight_diagram(self) -> Drawing:
+        """The weights as a picture that shows itself in a notebook; its SVG text is ``.svg``."""
+        return draw_weights(self.labels, self.name)
+
+    def branches(self) -> tuple[Branch, ...]:
+        """Restriction to SU(N−1) × U(1); see :func:`haarloom.algebra.branching.branches`."""
+        from haarloom.algebra.branching import branches
+
+        return branches(self)
 
     def character(self) -> ClassFunction:
         """The character tr_r P as a class function."""

@@ -1,17 +1,18 @@
 """Dynkin labels and Young diagrams: two spellings of one irrep of SU(N), as plain tuples of integers.
 
-Labels are (a_1, …, a_{N−1}); the diagram has rows λ_i = a_i + … + a_{N−1} for i = 1 … N, so its last row is 0.
+Labels are (a_1, …, a_{N−1}); the diagram has rows λ_i = a_i + … + a_{N−1} for i = 1 … N, so its last row is
+0.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from functools import lru_cache
 from itertools import accumulate, pairwise
 from math import comb
 from operator import index
 from typing import Any
 
+from haarloom.algebra.bounded_cache import cached_terms
 from haarloom.exceptions import LabelError, ParameterError, SizeError
 
 __all__ = [
@@ -83,7 +84,7 @@ def validated_labels(rank: int, raw: Sequence[Any]) -> Labels:
 
 
 def validated_rows(raw: Sequence[Any]) -> Rows:
-    """Check the rows of a Young diagram: integers ≥ 0, none longer than the one above. Empty rows drop out."""
+    """Check the rows of a Young diagram: integers ≥ 0 that never grow downwards. Empty rows drop out."""
     rows = tuple(_natural(row, f"row {position}") for position, row in enumerate(raw, start=1))
     if any(lower > upper for upper, lower in pairwise(rows)):
         raise LabelError(f"rows {rows} given; a Young diagram has rows that never grow downwards: sort them.")
@@ -108,7 +109,7 @@ def count_up_to(rank: int, cutoff: int) -> int:
     return comb(cutoff + rank, rank)
 
 
-@lru_cache(maxsize=64)
+@cached_terms(limit=200_000)
 def labels_up_to(rank: int, cutoff: int) -> tuple[Labels, ...]:
     """All labels with Σ a_i ≤ cutoff in the basis order of :func:`order_key`.
 
@@ -123,7 +124,8 @@ def labels_up_to(rank: int, cutoff: int) -> tuple[Labels, ...]:
     count = count_up_to(rank, cutoff)
     if count > _MOST_IRREPS:
         raise SizeError(
-            f"cutoff {cutoff} given; SU({rank + 1}) has {count:,} irreps up to it, more than {_MOST_IRREPS:,}: "
+            f"cutoff {cutoff} given; SU({rank + 1}) has {count:,} irreps up to it, more than "
+            f"{_MOST_IRREPS:,}: "
             "choose a smaller cutoff."
         )
     return tuple(labels for total in range(cutoff + 1) for labels in _compositions(total, rank))

@@ -2,13 +2,14 @@
 
 Rules
 -----
-* A name is the dimension. Irreps of one dimension that are not conjugates of each other are told apart by primes, in
-  order of rising index, then of the basis order (R. Slansky, *Phys. Rep.* 79 (1981) 1, primes the same way).
-* Of a conjugate pair one carries ``bar``. SU(3): the one with p < q. SU(N ≥ 4): the one with the larger N-ality; when
-  both have the same N-ality, the one whose labels come later in lexicographic descent. So for SU(5) 10 = (0,1,0,0) and
-  45 = (0,1,0,1).
+* A name is the dimension. Irreps of one dimension that are not conjugates of each other are told apart by
+  primes, in order of rising index, then of the basis order (R. Slansky, *Phys. Rep.* 79 (1981) 1, primes the
+  same way).
+* Of a conjugate pair one carries ``bar``. SU(3): the one with p < q. SU(N ≥ 4): the one with the larger
+  N-ality; when both have the same, the one whose labels come later in lexicographic descent. So for SU(5)
+  10 = (0,1,0,0) and 45 = (0,1,0,1).
 * The prime stands before ``bar``: ``15'bar``.
-* SU(2) names are spins, ``j=1/2``; the dimension (``"2"``) is understood as well.
+* SU(2) names are spins, ``j=1/2``; ``1/2`` and the dimension (``"2"``) are understood as well.
 * Above dimension 100,000 an irrep is called by its labels, ``(40,40)``. Labels are understood everywhere.
 """
 
@@ -62,15 +63,13 @@ def labels_from_name(n: int, name: str) -> Labels:
 
 
 def _parsed(n: int, name: str) -> Labels | None:
-    if match := re.fullmatch(r"\(\s*(\d+(?:\s*,\s*\d+)*)\s*,?\s*\)", name):
+    if match := re.fullmatch(r"\(\s*([0-9]+(?:\s*,\s*[0-9]+)*)\s*,?\s*\)", name):
         return validated_labels(n - 1, [int(label) for label in match[1].split(",")])
-    if n == 2 and (match := re.fullmatch(r"j=(\d{1,6})(/2)?", name)):
-        return (
-            (int(match[1]),)
-            if match[2] and int(match[1]) % 2
-            else (None if match[2] else (2 * int(match[1]),))
-        )
-    if match := re.fullmatch(r"(\d{1,6})('*)(bar)?", name):
+    if n == 2 and (match := re.fullmatch(r"(?:j=)?([0-9]{1,6})/2", name)):
+        return (int(match[1]),) if int(match[1]) % 2 else None
+    if n == 2 and (match := re.fullmatch(r"j=([0-9]{1,6})", name)):
+        return (2 * int(match[1]),)
+    if match := re.fullmatch(r"([0-9]{1,6})('*)(bar)?", name):
         return _by_dimension(n - 1, int(match[1]), len(match[2]), bool(match[3]))
     return None
 
@@ -103,7 +102,7 @@ def _families(rank: int, size: int) -> tuple[Labels, ...]:
 
 
 def _of_dimension(rank: int, size: int) -> Iterator[Labels]:
-    """All labels with exactly this dimension: the dimension grows with every label, so the search is finite."""
+    """All labels of one dimension: it grows with every label, so the search is finite."""
     if rank == 2:
         yield from _of_dimension_su3(size)
         return

@@ -38,7 +38,6 @@ def _elementary(n: int) -> tuple[Any, ...]:
     return tuple(found[1:])
 
 
-@lru_cache(maxsize=4096)
 def _monomial(n: int, exponents: tuple[int, ...]) -> Any:
     """∏ e_k^{a_k} in the power sums."""
     factors = [_power(n, k, power) for k, power in enumerate(exponents) if power]

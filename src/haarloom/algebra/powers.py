@@ -1,14 +1,16 @@
 """Powers of irreps: tensor, symmetric, antisymmetric and general Schur-functor powers, and Adams operations.
 
-All rest on power sums: p_k[χ](P) = χ(P^k) stretches every weight by k. Newton's identities then give the complete
-and elementary symmetric functions h_n, e_n of the eigenvalues of P in the irrep, and Jacobi and Trudi's determinant
-every other Schur function (I. G. Macdonald, *Symmetric Functions and Hall Polynomials*, §§ I.2, I.3).
+All rest on power sums: p_k[χ](P) = χ(P^k) stretches every weight by k. Newton's identities then give the
+complete and elementary symmetric functions h_n, e_n of the eigenvalues of P in the irrep, and Jacobi and
+Trudi's determinant every other Schur function (I. G. Macdonald, *Symmetric Functions and Hall Polynomials*,
+§§ I.2, I.3).
 """
 
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from operator import index
+from types import MappingProxyType
 from typing import Any
 
 from haarloom.algebra.bounded_cache import cached_terms
@@ -77,7 +79,8 @@ def symmetric(labels: Labels, copies: int, n: int) -> Mapping[Labels, int]:
 def antisymmetric(labels: Labels, copies: int, n: int) -> Mapping[Labels, int]:
     """Coefficient of z^n in det_R(1 + zP)^{copies}, in characters: e_n[copies·χ].
 
-    det_R(P) = 1 makes it the conjugate of the coefficient of z^{copies·d − n}, so only half of them take work.
+    det_R(P) = 1 makes it the conjugate of the coefficient of z^{copies·d − n}, so only half of them take
+    work.
     """
     highest = copies * dimension(labels)
     if n > highest:
@@ -97,16 +100,16 @@ def _degree(labels: Labels, copies: int, n: int, *, alternating: bool) -> Mappin
 
 
 @cached_terms(limit=200_000)
-def _newton(labels: Labels, copies: int, n: int, alternating: bool) -> dict[Labels, int]:
-    """Newton's identities with the power sums of ``copies`` sets of eigenvalues: n·e_n = Σ_k ±copies·p_k e_{n−k}."""
+def _newton(labels: Labels, copies: int, n: int, alternating: bool) -> Mapping[Labels, int]:
+    """Newton's identities, every power sum counted ``copies`` times: n·e_n = Σ_k ±copies·p_k e_{n−k}."""
     if n == 0:
-        return {(0,) * len(labels): 1}
+        return MappingProxyType({(0,) * len(labels): 1})
     total: dict[Labels, int] = {}
     for k in range(1, n + 1):
         sign = -copies if alternating and k % 2 == 0 else copies
         for found, count in act_on(stretched(labels, k), _newton(labels, copies, n - k, alternating)).items():
             total[found] = total.get(found, 0) + sign * count
-    return {found: count // n for found, count in total.items() if count}
+    return MappingProxyType({found: count // n for found, count in total.items() if count})
 
 
 def stretched(labels: Labels, k: int) -> dict[Rows, int]:

@@ -1,7 +1,8 @@
 """How a tensor product comes about, told step by step in one of two forms.
 
-``"weights"``: each weight of the smaller factor, where it lands, what is reflected and with what sign, what drops out
-on a wall, what cancels. ``"tableaux"``: each filling of Littlewood and Richardson and the irrep it stands for.
+``"weights"``: each weight of the smaller factor, where it lands, what is reflected and with what sign, what
+drops out on a wall, what cancels. ``"tableaux"``: each filling of Littlewood and Richardson and the irrep
+it stands for.
 """
 
 from __future__ import annotations
@@ -137,6 +138,8 @@ class ProductStory:
 def stories(factors: Sequence[Irrep], form: str) -> tuple[ProductStory, ...]:
     """The product of several irreps, two at a time from the left: one story for each pair that is multiplied.
 
+    An irrep that occurs several times on the way is told once; its multiplicity stands in the story before.
+
     Raises
     ------
     ParameterError
@@ -147,7 +150,9 @@ def stories(factors: Sequence[Irrep], form: str) -> tuple[ProductStory, ...]:
     if form not in ("weights", "tableaux"):
         raise ParameterError(f'form {form!r} given; steps are told by "weights" or by "tableaux".')
     if len(factors) < 2:
-        raise ParameterError("the factors of this decomposition are not known; steps() needs a product of irreps.")
+        raise ParameterError(
+            "the factors of this decomposition are not known; steps() needs a product of irreps."
+        )
     told: list[ProductStory] = []
     current = [factors[0]]
     for factor in factors[1:]:

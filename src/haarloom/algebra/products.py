@@ -1,19 +1,19 @@
 """Tensor products of irreps, on plain labels: the fast kernels.
 
-SU(2) and SU(3) have closed forms; every other SU(N) uses weight reflection. :mod:`haarloom.algebra.tableaux` holds the
-independent algorithm (counting tableaux) that referees these.
+SU(2) and SU(3) have closed forms; every other SU(N) uses weight reflection.
+:mod:`haarloom.algebra.tableaux` holds the independent algorithm (counting tableaux) that referees these.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
 from itertools import pairwise
-from math import prod
+from types import MappingProxyType
 
 from haarloom.algebra.bounded_cache import cached_terms
 from haarloom.algebra.invariants import dimension
 from haarloom.algebra.labels import Labels, rows_from_labels
-from haarloom.algebra.weights import contents, weight_count_bound
+from haarloom.algebra.weights import check_weight_size, contents
 from haarloom.exceptions import SizeError
 
 __all__ = [
@@ -27,7 +27,7 @@ __all__ = [
     "multiply_sums",
 ]
 
-_MOST_STEPS = 10_000_000
+_MOST_IRREPS = 1_000_000
 
 
 def multiply(left: Labels, right: Labels) -> Mapping[Labels, int]:
@@ -40,13 +40,10 @@ def multiply(left: Labels, right: Labels) -> Mapping[Labels, int]:
 
 
 @cached_terms(limit=200_000)
-def _multiply(left: Labels, right: Labels) -> dict[Labels, int]:
+def _multiply(left: Labels, right: Labels) -> Mapping[Labels, int]:
     check_product_size(left, right)
-    if len(left) == 1:
-        return _multiply_su2(left[0], right[0])
-    if len(left) == 2:
-        return _multiply_su3(left, right)
-    return multiply_by_reflection(left, right)
+    kernel = {1: _multiply_su2, 2: _multiply_su3}.get(len(left), multiply_by_reflection)
+    return MappingProxyType(kernel(left, right))
 
 
 def check_product_size(left: Labels, right: Labels) -> None:
@@ -55,20 +52,19 @@ def check_product_size(left: Labels, right: Labels) -> None:
     Raises
     ------
     SizeError
-        Above about ten million elementary steps: for SU(2) the number of irreps, for SU(3) the number of terms of
-        the closed form, for N ≥ 4 the number of weights of the smaller factor.
+        For SU(2) and SU(3) when a bound on the number of irreps that occur exceeds a million, for N ≥ 4
+        when the weights of the smaller factor are out of reach
+        (:func:`haarloom.algebra.weights.check_weight_size`).
     """
-    if len(left) == 1:
-        work = min(left[0], right[0]) + 1
-    elif len(left) == 2:
-        turns = [min(left[0], right[1]), min(right[0], left[1]), min(left[0], right[0]) + min(left[1], right[1])]
-        work = prod(turn + 1 for turn in turns)
-    else:
-        work = weight_count_bound(min(left, right, key=dimension))
-    if work > _MOST_STEPS:
+    if len(left) > 2:
+        check_weight_size(min(left, right, key=dimension))
+        return
+    (p, q), (r, s) = (*left, 0)[:2], (*right, 0)[:2]
+    most = (min(p, s) + min(q, r) + 1) * (min(p, r) + min(q, s) + 1)
+    if most > _MOST_IRREPS:
         raise SizeError(
-            f"{left} ⊗ {right} takes about {work:,} steps, more than {_MOST_STEPS:,}: use smaller irreps "
-            "(for SU(3), multiplicity() gives any single one by its closed form)."
+            f"{left} ⊗ {right} holds up to {most:,} irreps, more than {_MOST_IRREPS:,}: use smaller ones "
+            "(products.multiplicity gives any single multiplicity of SU(3) by its closed form)."
         )
 
 
@@ -94,8 +90,9 @@ def multiply_sums(left: Mapping[Labels, int], right: Mapping[Labels, int]) -> di
 def multiply_by_reflection(left: Labels, right: Labels) -> dict[Labels, int]:
     """Product by weight reflection, any N: shift the larger factor by each weight of the smaller.
 
-    Each weight μ of the smaller factor sends λ + ρ to λ + μ + ρ. Reflected into the dominant chamber it counts with the
-    sign of the reflection; on a wall it drops out (G. Racah and D. Speiser, *Fortschr. Phys.* 12 (1964) 1; A. U. Klimyk).
+    Each weight μ of the smaller factor sends λ + ρ to λ + μ + ρ. Reflected into the dominant chamber it
+    counts with the sign of the reflection; on a wall it drops out (G. Racah and D. Speiser, *Fortschr.
+    Phys.* 12 (1964) 1; A. U. Klimyk).
     """
     small, large = sorted((left, right), key=dimension)
     return act_on(contents(rows_from_labels(small)), {large: 1})
@@ -174,31 +171,46 @@ def fusion_tensor(basis: Sequence[Labels], factor: Labels) -> list[tuple[int, in
     ]
 
 
-def _multiply_su2(left: int, right: int) -> dict[Labels, int]:
-    return {(total,): 1 for total in range(abs(left - right), left + right + 1, 2)}
+def _multiply_su2(left: Labels, right: Labels) -> dict[Labels, int]:
+    (a,), (b,) = left, right
+    return {(total,): 1 for total in range(abs(a - b), a + b + 1, 2)}
 
 
 def _multiply_su3(left: Labels, right: Labels) -> dict[Labels, int]:
-    """Closed form for SU(3): contract i upper with lower indices one way and j the other, then antisymmetrise k pairs.
+    """Closed form for SU(3), a constant number of operations for each irrep that occurs.
 
-    S. Coleman, *J. Math. Phys.* 5 (1964) 1343; see also his *Aspects of Symmetry* (1985), chapter 1.
+    Contracting i upper with lower indices one way and m − i the other leaves (p+r−m, q+s−m) upper and lower
+    ones; antisymmetrising k pairs of upper ones gives (p+r−m−2k, q+s−m+k), of lower ones the mirror image
+    (S. Coleman, *J. Math. Phys.* 5 (1964) 1343). Different m and k give different irreps, so the
+    multiplicity is the number of i that leave k pairs: the length of an interval.
     """
     (p, q), (r, s) = left, right
     found: dict[Labels, int] = {}
-    for i in range(min(p, s) + 1):
-        for j in range(min(r, q) + 1):
-            upper, lower = p - i + r - j, q - j + s - i
-            for k in range(min(p - i, r - j) + 1):
-                labels = (upper - 2 * k, lower + k)
-                found[labels] = found.get(labels, 0) + 1
-            for k in range(1, min(q - j, s - i) + 1):
-                labels = (upper + k, lower - 2 * k)
-                found[labels] = found.get(labels, 0) + 1
+    most, other = min(p, s), min(r, q)
+    for m in range(most + other + 1):
+        low, high = max(0, m - other), min(most, m)
+        upper, lower, count = p + r - m, q + s - m, high - low + 1
+        _ladder(found, (upper, lower), (-2, 1), count, (p - high, r - m + low))
+        _ladder(found, (upper, lower), (1, -2), count, (s - high, q - m + low))
     return found
 
 
+def _ladder(
+    found: dict[Labels, int], start: Labels, step: Labels, count: int, slack: tuple[int, int]
+) -> None:
+    """Labels start + k·step for k = 0, 1, …; beyond each slack every further pair costs one copy."""
+    (upper, lower), (up, down), (first, second) = start, step, slack
+    k = 0
+    while count > 0:
+        found[upper, lower] = count
+        upper += up
+        lower += down
+        k += 1
+        count -= (k > first) + (k > second)
+
+
 def _multiplicity_su3(left: Labels, right: Labels, result: Labels) -> int:
-    """Closed-form SU(3) multiplicity: singlets in left ⊗ right ⊗ result-bar, k_max − k_min + 1 when not negative.
+    """Closed-form SU(3) multiplicity: the singlets in left ⊗ right ⊗ result-bar, k_max − k_min + 1 or 0.
 
     L. Bégin, P. Mathieu, M. A. Walton, *Mod. Phys. Lett. A* 7 (1992) 3255 (the tensor-product limit there).
     """

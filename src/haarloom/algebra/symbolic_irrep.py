@@ -1,4 +1,4 @@
-"""Irreps whose Dynkin labels are symbols: dimension, Casimirs and index as polynomials, products as formulas."""
+"""Irreps whose Dynkin labels are symbols: invariants as polynomials, products as formulas."""
 
 from __future__ import annotations
 
@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from itertools import combinations
 from typing import TYPE_CHECKING, Any
 
-from sympy import Expr, Integer, Rational, Symbol, expand, factor, latex, sympify
+from sympy import Expr, Integer, Mul, Rational, Symbol, expand, factor, latex, sympify
 
 from haarloom.algebra.irrep import Irrep
 from haarloom.algebra.labels import validated_labels
@@ -44,7 +44,7 @@ class SymbolicIrrep:
 
     @classmethod
     def from_labels(cls, group: SU, labels: Sequence[Any]) -> SymbolicIrrep:
-        """Check the labels: N − 1 of them, whole numbers ≥ 0 or polynomials in symbols with whole coefficients.
+        """Check the labels: N − 1 whole numbers ≥ 0, or polynomials in symbols with whole coefficients.
 
         Raises
         ------
@@ -52,7 +52,9 @@ class SymbolicIrrep:
             For a wrong number of labels or one that can be no integer.
         """
         if len(labels) != group.rank:
-            raise LabelError(f"{len(labels)} labels {tuple(labels)} given; {group} takes {group.rank} of them.")
+            raise LabelError(
+                f"{len(labels)} labels {tuple(labels)} given; {group} takes {group.rank} of them."
+            )
         return cls(group, tuple(_symbolic_label(label, place) for place, label in enumerate(labels, start=1)))
 
     def __repr__(self) -> str:
@@ -71,11 +73,12 @@ class SymbolicIrrep:
     @property
     def dimension(self) -> Expr:
         """Weyl's formula: over i < j, the product of (a_i + … + a_{j−1} + j − i)/(j − i); factored."""
-        n = self.group.n
-        result: Expr = Integer(1)
-        for i, j in combinations(range(n), 2):
-            result *= (sum(self.labels[i:j]) + (j - i)) / Integer(j - i)
-        return factor(result)
+        number, factors = Rational(1), []
+        for i, j in combinations(range(self.group.n), 2):
+            content, polynomial = expand(sum(self.labels[i:j]) + (j - i)).primitive()
+            number *= Rational(content, j - i)
+            factors.append(polynomial)
+        return Mul(number, *factors)
 
     @property
     def nality(self) -> Expr:
@@ -83,7 +86,7 @@ class SymbolicIrrep:
         return expand(sum(i * label for i, label in enumerate(self.labels, start=1)))
 
     def casimir(self, degree: int = 2) -> Expr:
-        """Casimir of degree 2 (expanded) or 3 (factored), generators normalised with T_F = 1/2.
+        """Casimir of degree 2 or 3, generators normalised with T_F = 1/2; expanded, C₃ of SU(3) factored.
 
         Raises
         ------
@@ -92,16 +95,16 @@ class SymbolicIrrep:
         """
         if degree not in (2, 3):
             raise ParameterError(f"Casimir of degree {degree!r} asked for; the degrees built in are 2 and 3.")
-        shifted = self._traceless_rows()
+        n, shifted = self.group.n, self._traceless_rows()
         if degree == 3:
-            return factor(sum(row**3 for row in shifted) / 2)
-        n = self.group.n
+            cubic = expand(sum(row**3 for row in shifted) / 2)
+            return factor(cubic) if n == 3 else cubic
         return expand((sum(row**2 for row in shifted) - Rational(n * (n**2 - 1), 12)) / 2)
 
     @property
     def index(self) -> Expr:
         """Index d·C₂/(N² − 1), factored."""
-        return factor(self.dimension * self.casimir(2) / (self.group.n**2 - 1))
+        return self.dimension * factor(self.casimir(2)) / (self.group.n**2 - 1)
 
     def at(self, **values: int) -> Irrep:
         """The irrep of the family with whole numbers for the symbols, by name.
@@ -111,8 +114,12 @@ class SymbolicIrrep:
         LabelError
             When a label stays symbolic or becomes negative.
         """
-        numbers = {symbol: sympify(values[symbol.name]) for symbol in self.free_symbols if symbol.name in values}
-        return Irrep(self.group, validated_labels(self.group.rank, [_number(v.subs(numbers)) for v in self.labels]))
+        numbers = {
+            symbol: sympify(values[symbol.name]) for symbol in self.free_symbols if symbol.name in values
+        }
+        return Irrep(
+            self.group, validated_labels(self.group.rank, [_number(v.subs(numbers)) for v in self.labels])
+        )
 
     def __mul__(self, other: Any) -> SymbolicProduct:
         """Product with a concrete irrep as a formula with its conditions.
@@ -126,7 +133,8 @@ class SymbolicIrrep:
         """
         if isinstance(other, SymbolicIrrep):
             raise ParameterError(
-                f"{self} ⊗ {other} given; with symbols in both factors the multiplicities are not bounded and no "
+                f"{self} ⊗ {other} given; with symbols in both factors the multiplicities are not "
+                "bounded and no "
                 "finite formula exists: give one factor numbers for labels."
             )
         if not isinstance(other, Irrep):
@@ -156,12 +164,16 @@ class SymbolicIrrep:
 
 def _symbolic_label(raw: Any, place: int) -> Expr:
     label = raw if isinstance(raw, Expr) else Integer(validated_labels(1, [raw])[0])
-    whole = label.is_polynomial(*label.free_symbols) and all(
-        number.is_Integer for number in label.as_poly(*label.free_symbols).coeffs()
-    ) if label.free_symbols else label.is_Integer and label >= 0
+    whole = (
+        label.is_polynomial(*label.free_symbols)
+        and all(number.is_Integer for number in label.as_poly(*label.free_symbols).coeffs())
+        if label.free_symbols
+        else label.is_Integer and label >= 0
+    )
     if not whole or any(symbol.is_integer is False for symbol in label.free_symbols):
         raise LabelError(
-            f"Dynkin label a_{place} is {label}; it must be an integer ≥ 0, or a polynomial with whole coefficients "
+            f"Dynkin label a_{place} is {label}; it must be an integer ≥ 0, or a polynomial with whole "
+            "coefficients "
             "in symbols that stand for integers."
         )
     return label

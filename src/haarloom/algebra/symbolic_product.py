@@ -1,9 +1,9 @@
-"""Products of a symbolic family of irreps with a concrete one: each term with the conditions under which it occurs.
+"""Products of a symbolic family of irreps with a concrete one, each term with its conditions.
 
-For labels a and a weight μ of the concrete irrep c, (a + μ) occurs in (a) ⊗ c as often as c has vectors of weight μ
-that are killed by e_i^{a_i + 1} for every i (K. R. Parthasarathy, R. Ranga Rao, V. S. Varadarajan, *Ann. Math.* 85
-(1967) 383). So a multiplicity depends on each a_i only up to the longest string of c, never falls when an a_i grows,
-and finitely many concrete products settle every boundary case.
+For labels a and a weight μ of the concrete irrep c, (a + μ) occurs in (a) ⊗ c as often as c has vectors of
+weight μ that are killed by e_i^{a_i + 1} for every i (K. R. Parthasarathy, R. Ranga Rao, V. S. Varadarajan,
+*Ann. Math.* 85 (1967) 383). So a multiplicity depends on each a_i only up to the longest string of c, never
+falls when an a_i grows, and finitely many concrete products settle every boundary case.
 """
 
 from __future__ import annotations
@@ -55,13 +55,17 @@ class SymbolicTerm:
     def latex(self) -> str:
         """The term in LaTeX, each copy with its condition in brackets."""
         name = f"({','.join(latex(label) for label in self.labels)})"
-        shown = [name if condition == S.true else rf"{name}\,[{latex(condition)}]" for condition in self.conditions]
+        shown = [
+            name if condition == S.true else rf"{name}\,[{latex(condition)}]" for condition in self.conditions
+        ]
         return r" \oplus ".join(shown)
 
     def text(self) -> str:
         """The term as plain text."""
         name = f"({', '.join(map(str, self.labels))})"
-        shown = [name if condition == S.true else f"{name} [{_spoken(condition)}]" for condition in self.conditions]
+        shown = [
+            name if condition == S.true else f"{name} [{_spoken(condition)}]" for condition in self.conditions
+        ]
         return " + ".join(shown)
 
 
@@ -116,11 +120,12 @@ def symbolic_product(family: SymbolicIrrep, factor: Irrep) -> SymbolicProduct:
     cases = prod(map(len, axes))
     if cases > _MOST_CASES:
         raise SizeError(
-            f"the formula for {family} ⊗ {factor!r} takes {cases:,} concrete products, more than {_MOST_CASES:,}: "
+            f"the formula for {family} ⊗ {factor!r} takes {cases:,} concrete products, more than "
+            f"{_MOST_CASES:,}: "
             "use a smaller irrep, or numbers for some labels."
         )
     table = {corner: multiply(corner, factor.labels) for corner in product(*axes)}
-    terms = (_term(family, weight, table) for weight in sorted(system, reverse=True))
+    terms = (_term(family, weight, table) for weight in system)
     return SymbolicProduct(family, factor, tuple(term for term in terms if term.conditions))
 
 
@@ -129,7 +134,9 @@ def _axis(label: Expr, longest: int) -> range:
     return range(int(label), int(label) + 1) if label.is_Integer else range(longest + 1)
 
 
-def _term(family: SymbolicIrrep, weight: Labels, table: Mapping[Labels, Mapping[Labels, int]]) -> SymbolicTerm:
+def _term(
+    family: SymbolicIrrep, weight: Labels, table: Mapping[Labels, Mapping[Labels, int]]
+) -> SymbolicTerm:
     counts = {
         corner: found.get(tuple(a + m for a, m in zip(corner, weight, strict=True)), 0)
         for corner, found in table.items()

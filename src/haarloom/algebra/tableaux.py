@@ -1,9 +1,10 @@
 """Tensor products by counting tableaux: the rule of Littlewood and Richardson.
 
-Independent of the weight reflection in :mod:`haarloom.algebra.products`, which it referees; also the second form in
-which a product tells its steps. The boxes of the right factor's row k carry the letter k and are added to the left
-factor's diagram, letter by letter, so that no two equal letters share a column, and reading rows from the right, top
-to bottom, letter k never outnumbers letter k − 1 (I. G. Macdonald, *Symmetric Functions and Hall Polynomials*, I.9).
+Independent of the weight reflection in :mod:`haarloom.algebra.products`, which it referees; also the second
+form in which a product tells its steps. The boxes of the right factor's row k carry the letter k and are
+added to the left factor's diagram, letter by letter, so that no two equal letters share a column, and
+reading rows from the right, top to bottom, letter k never outnumbers letter k − 1 (I. G. Macdonald,
+*Symmetric Functions and Hall Polynomials*, I.9).
 """
 
 from __future__ import annotations

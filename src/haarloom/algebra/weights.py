@@ -1,14 +1,16 @@
-"""Weight systems: how often each weight occurs in an irrep, and how a set of weights is told apart into irreps.
+"""Weight systems: how often each weight occurs in an irrep, and how weights gather into irreps.
 
-A weight is held here by its *content* (c_1, …, c_N): the exponents of the eigenvalues, x_1^{c_1} ⋯ x_N^{c_N}. Contents
-of one irrep add up to the number of boxes of its diagram; its Dynkin labels are the differences c_i − c_{i+1}.
+A weight is held here by its *content* (c_1, …, c_N): the exponents of the eigenvalues, x_1^{c_1} ⋯
+x_N^{c_N}. Contents of one irrep add up to the number of boxes of its diagram; its Dynkin labels are the
+differences c_i − c_{i+1}.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 from itertools import pairwise, product
-from math import comb, factorial, prod
+from math import factorial, prod
+from types import MappingProxyType
 
 from haarloom.algebra.bounded_cache import cached_terms
 from haarloom.algebra.invariants import dimension
@@ -17,16 +19,16 @@ from haarloom.exceptions import SizeError
 
 __all__ = [
     "characters_in_contents",
+    "check_weight_size",
     "contents",
     "dominant_weights",
     "orbit_size",
     "reflected",
-    "weight_count_bound",
     "weight_system",
     "weights",
 ]
 
-_MOST_WEIGHTS = 5_000_000
+_LARGEST = 3_000_000
 
 
 def weights(labels: Labels) -> dict[Labels, int]:
@@ -49,7 +51,7 @@ def dominant_weights(labels: Labels) -> dict[Labels, int]:
 
 
 def orbit_size(weight: Labels) -> int:
-    """Number of weights in the Weyl orbit of ``weight``: N! over the permutations that leave its content fixed.
+    """Size of the Weyl orbit of a weight: N! over the permutations that leave its content fixed.
 
     >>> orbit_size((1, 1)), orbit_size((1, 0)), orbit_size((0, 0))
     (6, 3, 1)
@@ -59,36 +61,40 @@ def orbit_size(weight: Labels) -> int:
 
 
 def weight_system(labels: Labels) -> Mapping[Rows, int]:
-    """Contents of an irrep of SU(N) with multiplicities, after a look at how many there are.
+    """Contents of an irrep of SU(N) with multiplicities, after a look at its size.
 
     Raises
     ------
     SizeError
-        When there may be more than five million; the message says how many.
+        When the dimension, a bound on the steps this takes, exceeds three million.
     """
-    bound = weight_count_bound(labels)
-    if bound > _MOST_WEIGHTS:
-        raise SizeError(
-            f"the irrep {labels} has up to {bound:,} weights, more than {_MOST_WEIGHTS:,}: use a smaller irrep."
-        )
+    check_weight_size(labels)
     return contents(rows_from_labels(labels))
 
 
-def weight_count_bound(labels: Labels) -> int:
-    """An upper bound of the number of different weights: the dimension, or the contents with this many boxes."""
-    n, boxes = len(labels) + 1, sum(rows_from_labels(labels))
-    return min(dimension(labels), comb(boxes + n - 1, n - 1))
+def check_weight_size(labels: Labels) -> None:
+    """Refuse an irrep whose weights would not be found in reasonable time, naming its dimension."""
+    if dimension(labels) > _LARGEST:
+        raise SizeError(
+            f"the irrep {labels} has dimension {dimension(labels):,}; weights, and what rests on them, "
+            "are worked out "
+            f"up to {_LARGEST:,}: use a smaller irrep."
+        )
 
 
 @cached_terms(limit=100_000)
-def contents(rows: Rows) -> dict[Rows, int]:
+def contents(rows: Rows) -> Mapping[Rows, int]:
     """Contents of the GL(N) irrep with diagram ``rows``, with multiplicities (Kostka numbers).
 
-    Gelfand and Tsetlin's branching: restricted to GL(N−1) the irrep falls apart into all diagrams μ that interlace
-    λ_1 ≥ μ_1 ≥ λ_2 ≥ … ≥ λ_N, and the boxes that went missing are the exponent of x_N. No subtraction occurs.
+    Gelfand and Tsetlin's branching: restricted to GL(N−1) the irrep falls apart into all diagrams μ that
+    interlace λ_1 ≥ μ_1 ≥ λ_2 ≥ … ≥ λ_N, and the boxes that went missing are the exponent of x_N. No
+    subtraction occurs.
     """
     if len(rows) == 1:
-        return {rows: 1}
+        return MappingProxyType({rows: 1})
+    if len(rows) == 2:
+        top, bottom = rows
+        return MappingProxyType({(top - k, bottom + k): 1 for k in range(top - bottom + 1)})
     system: dict[Rows, int] = {}
     boxes = sum(rows)
     for below in interlacing(rows):
@@ -96,7 +102,7 @@ def contents(rows: Rows) -> dict[Rows, int]:
         for content, count in contents(below).items():
             key = (*content, last)
             system[key] = system.get(key, 0) + count
-    return system
+    return MappingProxyType(system)
 
 
 def interlacing(rows: Rows) -> Iterator[Rows]:
@@ -123,8 +129,9 @@ def reflected(shifted: Rows) -> tuple[int, Rows]:
 def characters_in_contents(system: Mapping[Rows, int]) -> dict[Labels, int]:
     """Characters that add up to a Weyl-invariant combination of contents: Σ m_c x^c = Σ_r a_r χ_r.
 
-    Every content c lands, shifted by ρ and reflected, on one irrep with a sign (the product with the trivial irrep in
-    the rule of Racah and Speiser, *Fortschr. Phys.* 12 (1964) 1). The result may have negative coefficients.
+    Every content c lands, shifted by ρ and reflected, on one irrep with a sign (the product with the
+    trivial irrep in the rule of Racah and Speiser, *Fortschr. Phys.* 12 (1964) 1). The result may have
+    negative coefficients.
     """
     found: dict[Labels, int] = {}
     for content, count in system.items():

@@ -29,6 +29,8 @@ def main(arguments: Sequence[str] | None = None) -> int:
         print(f"haarloom: {_one_line(problem)}", file=sys.stderr)
     except OSError as problem:
         print(f"haarloom: {problem.filename or 'input'}: {problem.strerror or problem}", file=sys.stderr)
+    except KeyboardInterrupt:
+        print("haarloom: interrupted", file=sys.stderr)
     return 1
 
 

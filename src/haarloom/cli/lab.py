@@ -103,7 +103,9 @@ def _require_free(port: int) -> None:
         try:
             probe.bind(("127.0.0.1", port))
         except OSError as problem:
-            raise LabError(f"port {port} cannot be used ({problem.strerror}): choose another --port") from None
+            raise LabError(
+                f"port {port} cannot be used ({problem.strerror}): choose another --port"
+            ) from None
 
 
 def _address(server: subprocess.Popen[bytes], notebook: Path) -> str:

@@ -7,7 +7,7 @@ class to the one server that it starts.
 
 from __future__ import annotations
 
-import asyncio
+from typing import Any
 
 from jupyter_server.services.kernels.connection.channels import ZMQChannelsWebsocketConnection
 
@@ -17,7 +17,7 @@ __all__ = ["PromptConnection"]
 class PromptConnection(ZMQChannelsWebsocketConnection):
     """The server's own connection with TCP_NODELAY set."""
 
-    def connect(self) -> asyncio.Future[None] | None:
+    def connect(self) -> Any:
         """Connect as ever, with nothing held back."""
         self.websocket_handler.set_nodelay(True)
         return super().connect()

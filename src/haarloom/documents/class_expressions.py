@@ -12,7 +12,7 @@ from collections.abc import Iterable
 import sympy
 
 from haarloom.documents.expressions import symbol_reader
-from haarloom.documents.grammar import Reader
+from haarloom.documents.grammar import CallReader, Reader
 from haarloom.documents.tokens import Token
 
 __all__ = ["parse_class_expression"]
@@ -57,8 +57,7 @@ def parse_class_expression(text: str, allowed_symbols: Iterable[str] | None = No
             return parameter(reader, token)
         return LOOP_CONJUGATE if _star_belongs_to_loop(reader) else LOOP
 
-    calls = {"tr": _trace, "chi": _character, "conj": _conjugate, "conjugate": _conjugate}
-    return Reader(text, symbol, calls).whole()
+    return Reader(text, symbol, _WORDS).whole()
 
 
 def _star_belongs_to_loop(reader: Reader) -> bool:
@@ -99,6 +98,14 @@ def _conjugate(reader: Reader, token: Token, arguments: list[sympy.Expr]) -> sym
     return sympy.conjugate(arguments[0]).replace(
         lambda part: isinstance(part, sympy.conjugate), lambda part: _conjugate_word(part.args[0])
     )
+
+
+_WORDS: dict[str, CallReader] = {
+    "tr": _trace,
+    "chi": _character,
+    "conj": _conjugate,
+    "conjugate": _conjugate,
+}
 
 
 def _conjugate_word(word: sympy.Expr) -> sympy.Expr:

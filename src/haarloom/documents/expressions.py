@@ -55,7 +55,7 @@ def parse_expression(text: str, allowed_symbols: Iterable[str] | None = None) ->
     >>> parse_expression("2t")
     Traceback (most recent call last):
     ...
-    haarloom.exceptions.ExpressionError: an operator is missing before 't'; write a product with '*' (at character 2)
+    haarloom.exceptions.ExpressionError: an operator is missing before 't'; ... (at character 2)
         2t
          ^
     """

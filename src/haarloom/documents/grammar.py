@@ -6,7 +6,7 @@ bounded; so are the sizes of exact powers, which could otherwise fill the memory
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 
 import sympy
@@ -14,7 +14,7 @@ import sympy
 from haarloom.documents.tokens import Token, refusal, tokenize
 from haarloom.exceptions import ExpressionError
 
-__all__ = ["CONSTANTS", "FUNCTIONS", "Reader", "SymbolReader"]
+__all__ = ["CONSTANTS", "FUNCTIONS", "CallReader", "Reader", "SymbolReader"]
 
 _DEEPEST = 50
 _LARGEST_POWER = 1000
@@ -50,7 +50,7 @@ class Reader:
 
     text: str
     symbol: SymbolReader
-    calls: dict[str, CallReader] = field(default_factory=dict)
+    calls: Mapping[str, CallReader] = field(default_factory=dict)
     tokens: list[Token] = field(init=False)
     place: int = field(init=False, default=0)
     depth: int = field(init=False, default=0)

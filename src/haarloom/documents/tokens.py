@@ -21,7 +21,18 @@ _PATTERN = re.compile(
     r"|(?P<space>\s+)",
     re.ASCII,
 )
-_LOOK_ALIKES = {"−": "-", "–": "-", "·": "*", "×": "*", "⋅": "*", "÷": "/", "[": "(", "]": ")", "{": "(", "}": ")"}
+_LOOK_ALIKES = {
+    "−": "-",
+    "–": "-",
+    "·": "*",
+    "×": "*",
+    "⋅": "*",
+    "÷": "/",
+    "[": "(",
+    "]": ")",
+    "{": "(",
+    "}": ")",
+}
 
 
 @dataclass(frozen=True)
@@ -56,7 +67,9 @@ def tokenize(text: str) -> list[Token]:
     if not isinstance(text, str):
         raise ExpressionError(f"{text!r} given where the text of an expression is needed: put it in quotes.")
     if len(text) > MOST_CHARACTERS:
-        raise ExpressionError(f"the expression has {len(text)} characters; at most {MOST_CHARACTERS} are read.")
+        raise ExpressionError(
+            f"the expression has {len(text)} characters; at most {MOST_CHARACTERS} are read."
+        )
     tokens: list[Token] = []
     place, spaced = 0, False
     while place < len(text):

@@ -19,12 +19,12 @@ from haarloom.numerics.labels import conjugation
 from haarloom.numerics.link_numbers import link_coefficients_at
 from haarloom.numerics.ordering import spectral_order
 from haarloom.numerics.site_components import outward_reach, site_components
-from haarloom.numerics.truncation import EPS, phase_of
+from haarloom.numerics.truncation import EPS, input_errors, phase_of
 
 if TYPE_CHECKING:
     from haarloom.ring.model import RingModel
 
-__all__ = ["BatchErrors", "TruncationBatch", "batch_errors", "truncate_batch"]
+__all__ = ["LevelSet", "TruncationBatch", "batch_errors", "complete_levels", "truncate_batch"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -37,8 +37,8 @@ class TruncationBatch:
         T inside, shape (M, n, n).
     upwards, downwards
         C (M, m, n) and Bᵀ (M, m, n): what couples to the m irreps of the shell beyond.
-    norm, outside, rest, noise
-        ‖W‖; |k| beyond the basis; what couples beyond the shell; η. Shape (M,) each.
+    norm, outside, rest, rim, noise
+        ‖W‖; |k| beyond the basis; what couples beyond the shell; bound of ‖B‖ and ‖C‖; η. Shape (M,).
     mirror, phase
         J on the basis, shape (n,); Φ, shape (M, n).
     mirrored
@@ -51,6 +51,7 @@ class TruncationBatch:
     norm: NDArray[np.float64]
     outside: NDArray[np.float64]
     rest: NDArray[np.float64]
+    rim: NDArray[np.float64]
     noise: NDArray[np.float64]
     mirror: NDArray[np.int64]
     phase: NDArray[Any]
@@ -68,8 +69,11 @@ class TruncationBatch:
         largest = np.abs(self.matrix).max(axis=(1, 2))
         return np.asarray(np.abs(self.matrix - turned).max(axis=(1, 2)) <= 8 * EPS * largest)
 
-    def solved(self) -> tuple[NDArray[Any], NDArray[Any], NDArray[Any]]:
-        """All eigenvalues (M, n) in spectral order, right and left vectors (M, n, n) in columns."""
+    def solved(self, left: bool = True) -> tuple[NDArray[Any], NDArray[Any], NDArray[Any]]:
+        """All eigenvalues (M, n) in spectral order, right and left vectors (M, n, n) in columns.
+
+        Without ``left`` the right vectors stand in the place of the left ones.
+        """
         symmetric = bool(self.hermitian.all())
         if symmetric:
             values, right = np.linalg.eigh(self.matrix)
@@ -77,8 +81,8 @@ class TruncationBatch:
             values, right = np.linalg.eig(self.matrix)
         order = spectral_order(values)
         right = np.take_along_axis(right, order[:, None, :], axis=2)
-        left = right.conj() if symmetric else biorthogonal(right)
-        return np.take_along_axis(values, order, axis=1), right, left
+        dual = (right.conj() if symmetric else biorthogonal(right)) if left else right
+        return np.take_along_axis(values, order, axis=1), right, dual
 
 
 def truncate_batch(model: RingModel, cutoff: int, values: Mapping[str, NDArray[Any]]) -> TruncationBatch:
@@ -107,21 +111,23 @@ def truncate_batch(model: RingModel, cutoff: int, values: Mapping[str, NDArray[A
     beyond = (root * phase)[:, size:, None]
     matrix = np.broadcast_to(dressed[:, :size], (points, size, size))
     norm = _flat(model.site.norm_bound(values))
-    relative = np.divide(k_errors, np.abs(k), out=np.zeros(k.shape), where=k != 0).max(axis=1)
-    dimensions = np.array([irrep.dimension for irrep in components.support], dtype=float)
-    noise = 8 * EPS * np.linalg.norm(matrix, axis=(1, 2)) + np.abs(k).max(axis=1) * (
-        weight_errors @ dimensions + relative * norm
+    noise = 8 * EPS * np.linalg.norm(matrix, axis=(1, 2)) + input_errors(
+        components.support, weight_errors, norm, root, k_errors
     )
     tail = 0.0 if model.site.finite else _flat(model.site.tail_bound(outer - cutoff, values))
     far = _flat(model.link.largest_outside(outer, values))
+    outside = _flat(model.link.largest_outside(cutoff, values))
+    edge = root[:, count_up_to(rank, 2 * cutoff - outer) : size].max(axis=1)
+    rest = tail * np.sqrt(far) * root.max(axis=1)
     ones = np.ones(points)
     return TruncationBatch(
         matrix=matrix,
         upwards=dressed[:, size:],
         downwards=beyond * turned * root[:, None, :size],
         norm=norm * ones,
-        outside=_flat(model.link.largest_outside(cutoff, values)) * ones,
-        rest=tail * np.sqrt(far * np.abs(k).max(axis=1)) * ones,
+        outside=outside * ones,
+        rest=rest * ones,
+        rim=(norm * edge * np.sqrt(outside) + rest) * ones,
         noise=noise * ones,
         mirror=mirror[:size],
         phase=phase[:, :size],
@@ -134,83 +140,123 @@ def _flat(numbers: Any) -> NDArray[np.float64]:
 
 
 @dataclass(frozen=True, eq=False)
-class BatchErrors:
-    """Radii of the leading eigenvalues (M, L), infinite where the bound does not close, and all κ (M, m)."""
+class LevelSet:
+    """Levels at M points with what the bound needs of each.
 
-    radius: NDArray[np.float64]
-    condition: NDArray[np.float64]
-
-
-def batch_errors(
-    batch: TruncationBatch,
-    values: NDArray[Any],
-    right: NDArray[Any],
-    left: NDArray[Any],
-    levels: int,
-) -> BatchErrors:
-    """Radius around each leading eigenvalue that holds one of the untruncated T.
-
-    Parameters
+    Attributes
     ----------
     values
-        Shape (M, m).
+        Eigenvalues, shape (M, m).
     right, left
-        Biorthonormal vectors in columns, shape (M, n, m).
+        Norms of the vectors, shape (M, m); their product is the condition number.
+    upwards, downwards
+        ‖C x‖ and ‖yᵀ B‖, shape (M, m).
+    residual
+        ‖T x − λ x‖, shape (M, m), where the levels come from a projection; else 0.
+    rest
+        Estimated largest |λ| of the levels left out, shape (M,); None where all are there.
     """
-    size_right, size_left = (np.linalg.norm(vectors, axis=1) for vectors in (right, left))
-    rest = batch.rest[:, None]
-    up = np.linalg.norm(batch.upwards @ right, axis=1) + rest * size_right
-    down = np.linalg.norm(batch.downwards @ left, axis=1) + rest * size_left
-    noise = batch.noise[:, None]
-    radius = np.full((len(values), levels), np.inf)
+
+    values: NDArray[Any]
+    right: NDArray[np.float64]
+    left: NDArray[np.float64]
+    upwards: NDArray[np.float64]
+    downwards: NDArray[np.float64]
+    residual: NDArray[np.float64] | float = 0.0
+    rest: NDArray[np.float64] | None = None
+
+
+def complete_levels(
+    batch: TruncationBatch, values: NDArray[Any], right: NDArray[Any], left: NDArray[Any]
+) -> LevelSet:
+    """The level set of biorthonormal vectors in columns, shape (M, n, m)."""
+    sizes = [np.linalg.norm(vectors, axis=1) for vectors in (right, left)]
+    beyond = batch.rest[:, None]
+    up = np.linalg.norm(batch.upwards @ right, axis=1) + beyond * sizes[0]
+    down = np.linalg.norm(batch.downwards @ left, axis=1) + beyond * sizes[1]
+    return LevelSet(values, sizes[0], sizes[1], up, down)
+
+
+def batch_errors(batch: TruncationBatch, found: LevelSet, levels: int) -> NDArray[np.float64]:
+    """Radius around each leading eigenvalue that holds one of the untruncated T, shape (M, levels).
+
+    Infinite where the bound does not close. Levels left out enter as in
+    :mod:`haarloom.numerics.bounds`, as one block with the norms of the whole rim.
+    """
+    terms = _Terms.of(batch, found)
+    radius = np.full((len(found.values), levels), np.inf)
     for level in range(levels):
-        centre = values[:, level]
+        centre = found.values[:, level]
         room = np.abs(centre) - batch.norm * batch.outside
-        distance = np.abs(values - centre[:, None])
-        start = np.zeros(len(values))
-        for growth in (0.0, 1.0, 1.02, 2.0, 4.0, 16.0, 64.0):
-            start, load = _load(start, growth, room, distance, level, (up, down, size_right, size_left), noise)
-            closed = (load < 1) & (room > start) & ~np.isfinite(radius[:, level])
-            radius[closed, level] = start[closed]
-    return BatchErrors(radius, size_right * size_left)
+        distance = terms.distances(found, centre)
+        trial = np.zeros(len(centre))
+        for growth in (0.0, 1.0, 1.02, 2.0, 8.0, 64.0):
+            trial, load = terms.load(trial, growth, room, distance, level)
+            closed = (load < 1) & (room > trial) & ~np.isfinite(radius[:, level])
+            radius[closed, level] = trial[closed]
+            if growth and np.isfinite(radius[:, level])[room > 0].all():
+                break
+    return radius
 
 
-def _load(
-    radius: NDArray[np.float64],
-    growth: float,
-    room: NDArray[np.float64],
-    distance: NDArray[np.float64],
-    level: int,
-    sizes: tuple[NDArray[np.float64], ...],
-    noise: NDArray[np.float64],
-) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """The next radius to try, and the left side of the inequality there.
+@dataclass(frozen=True, eq=False)
+class _Terms:
+    """Squares that make up the strength √(c² g + a) √(b² g + a′) of each level, g = 1/(|λ| − d)."""
 
-    Growth 0 starts from the level alone; 1 takes the other levels into account; more than 1 retries
-    with a larger circle.
-    """
-    up, down, right, left = sizes
-    with np.errstate(divide="ignore", invalid="ignore"):
-        strength = _strength(room - radius, up, down, right, left, noise)
-        if growth > 1:
-            radius = radius * growth
-        else:
-            others = strength / np.abs(distance - radius[:, None])
-            others[:, level] = 0.0
-            crowd = np.clip(others.sum(axis=1), 0.0, 0.9)
-            radius = np.maximum(1.02 * strength[:, level] / (1 - crowd), 1e-300)
-        strength = _strength(room - radius, up, down, right, left, noise)
-        load = (strength / np.abs(distance - radius[:, None])).sum(axis=1)
-    return radius, np.where(np.isfinite(load), load, np.inf)
+    up: NDArray[np.float64]
+    down: NDArray[np.float64]
+    fixed_up: NDArray[np.float64]
+    fixed_down: NDArray[np.float64]
 
+    @classmethod
+    def of(cls, batch: TruncationBatch, found: LevelSet) -> _Terms:
+        noise = batch.noise[:, None]
+        up, down = found.upwards**2, found.downwards**2
+        fixed = [found.right**2 * noise, found.left**2 * noise]
+        if found.rest is None:
+            return cls(up, down, fixed[0], fixed[1])
+        # a residual couples a level to those left out, like B and C couple it to what was cut off
+        with np.errstate(divide="ignore"):
+            gain = 1 / np.maximum(np.abs(found.values) - found.rest[:, None], 0.0)
+        loose = np.square(found.residual) * gain
+        fixed = [fixed[0] + loose, fixed[1] + loose * (found.left / found.right) ** 2]
+        projector = 1 + np.sqrt(((found.left * found.right) ** 2).sum(axis=1, keepdims=True))
+        rim = batch.rim[:, None] ** 2
+        columns = ((up, rim), (down, rim * projector**2), (fixed[0], noise), (fixed[1], noise * projector**2))
+        return cls(*(np.concatenate(pair, axis=1) for pair in columns))
 
-def _strength(
-    margin: NDArray[np.float64],
-    up: NDArray[np.float64],
-    down: NDArray[np.float64],
-    right: NDArray[np.float64],
-    left: NDArray[np.float64],
-    noise: NDArray[np.float64],
-) -> NDArray[np.float64]:
-    gain = np.where(margin > 0, 1 / margin, np.inf)[:, None]
-    return np.asarray(np.sqrt((up**2 * gain + right**2 * noise) * (down**2 * gain + left**2 * noise)))
+    @staticmethod
+    def distances(found: LevelSet, centre: NDArray[Any]) -> NDArray[np.float64]:
+        apart = np.abs(found.values - centre[:, None])
+        if found.rest is None:
+            return apart
+        return np.concatenate([apart, np.maximum(np.abs(centre) - found.rest, 0.0)[:, None]], axis=1)
+
+    def strength(self, margin: NDArray[np.float64]) -> NDArray[np.float64]:
+        gain = np.where(margin > 0, 1 / margin, np.inf)[:, None]
+        return np.asarray(np.sqrt((self.up * gain + self.fixed_up) * (self.down * gain + self.fixed_down)))
+
+    def load(
+        self,
+        radius: NDArray[np.float64],
+        growth: float,
+        room: NDArray[np.float64],
+        distance: NDArray[np.float64],
+        level: int,
+    ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """The next radius to try, and the left side of the inequality there.
+
+        Growth 0 starts from the level alone; 1 takes the other levels into account; more than 1
+        retries with a larger circle.
+        """
+        with np.errstate(divide="ignore", invalid="ignore"):
+            if growth > 1:
+                radius = radius * growth
+            else:
+                strength = self.strength(room - radius)
+                others = strength / np.abs(distance - radius[:, None])
+                others[:, level] = 0.0
+                crowd = np.clip(others.sum(axis=1), 0.0, 0.9)
+                radius = np.maximum(1.02 * strength[:, level] / (1 - crowd), 1e-300)
+            load = (self.strength(room - radius) / np.abs(distance - radius[:, None])).sum(axis=1)
+        return radius, np.where(np.isfinite(load), load, np.inf)

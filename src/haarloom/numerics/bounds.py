@@ -12,134 +12,23 @@ the disc within holds as many eigenvalues of T as of A (switch B on continuously
 the basis that W couples outwards enters bᵢ and cᵢ.
 
 Levels about to coalesce have a huge κᵢ = ‖xᵢ‖‖yᵢ‖. They are taken together: in an orthonormal basis of their
-common invariant subspace the block is S = D + N, and 1/|λ − Λᵢ| is replaced by the bound
-Σ_k ‖N‖ᵏ / dist(λ, D)^{k+1} of its resolvent (P. Henrici, *Numer. Math.* 4 (1962) 24).
+common invariant subspace the block is S = D + N, N strictly triangular, and 1/|λ − Λᵢ| is replaced by
+the bound Σ_k ‖N‖ᵏ / (δ_1 ⋯ δ_{k+1}) of its resolvent, δ the distances to D, nearest first (after
+P. Henrici, *Numer. Math.* 4 (1962) 24; a path through N meets each level at most once).
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
+from haarloom.numerics.blocks import Block, complete_blocks, leading_blocks
 from haarloom.numerics.dense import EigenSystem
 from haarloom.numerics.truncation import EPS, Truncation
 
-__all__ = ["Block", "eigenvalue_errors", "mass_errors", "spectral_blocks"]
-
-STIFF = 1e4
-"""Condition number from which a level is looked at together with its nearest neighbour."""
-
-
-@dataclass(frozen=True, eq=False)
-class Block:
-    """An invariant subspace that the bound treats as one.
-
-    Attributes
-    ----------
-    values
-        Its eigenvalues, shape (m,).
-    upwards, downwards
-        c = ‖C X‖ and b = ‖Yᵀ B‖.
-    right, left
-        ‖X‖ and ‖Y‖; their product is the condition number.
-    departure
-        ‖N‖, the size of the part that is not normal.
-    around
-        Whether ``values`` holds the radius of a disc about 0 that contains its eigenvalues.
-    """
-
-    values: NDArray[Any]
-    upwards: float
-    downwards: float
-    right: float
-    left: float
-    departure: float
-    around: bool = False
-
-
-def spectral_blocks(truncation: Truncation, system: EigenSystem, levels: int) -> list[Block]:
-    """The blocks of a spectrum with what each couples outwards; single levels unless nearly coalesced."""
-    clusters = _stiff_clusters(system, levels)
-    single = np.ones(len(system.values), dtype=bool)
-    right, left = system.right.astype(complex), system.left.astype(complex)
-    blocks = []
-    for members in clusters:
-        single[members] = False
-        basis, dual, schur = _orthonormal_cluster(truncation, system, members)
-        upwards, downwards = truncation.coupling(basis, dual)
-        blocks.append(
-            Block(
-                np.diag(schur),
-                float(np.linalg.norm(upwards)),
-                float(np.linalg.norm(downwards)),
-                1.0,
-                float(np.linalg.norm(dual, 2)),
-                float(np.linalg.norm(np.triu(schur, 1))),
-            )
-        )
-    kept = np.flatnonzero(single)
-    norms = (
-        *truncation.coupling(right[:, kept], left[:, kept]),
-        np.linalg.norm(right[:, kept], axis=0),
-        np.linalg.norm(left[:, kept], axis=0),
-    )
-    for level, *sizes in zip(kept, *norms, strict=True):
-        blocks.append(Block(system.values[level : level + 1], *map(float, sizes), departure=0.0))
-    return blocks
-
-
-def _left_over(truncation: Truncation, system: EigenSystem) -> list[Block]:
-    """The levels that were not computed, as one block with the crude norms of the whole rim.
-
-    Its resolvent is taken as if it were normal, with the largest |λ| left out: an estimate, not a
-    proof, that enters the bounds of the computed levels in second order only.
-    """
-    if not system.rest:
-        return []
-    projector = 1 + float(np.linalg.norm(system.right, 2) * np.linalg.norm(system.left, 2))
-    rim = truncation.rim_norm
-    return [Block(np.array([system.rest]), rim, rim * projector, 1.0, projector, 0.0, around=True)]
-
-
-def _stiff_clusters(system: EigenSystem, levels: int) -> list[list[int]]:
-    """Groups of levels that nearly coalesce: large κ, joined to their nearest neighbour."""
-    values, condition = system.values, system.condition
-    partner: dict[int, set[int]] = {}
-    # levels far below the ones asked for are harmless however ill-conditioned
-    relevant = np.flatnonzero(condition[: levels + 2] > STIFF)
-    for level in relevant:
-        distance = np.abs(values - values[level])
-        distance[level] = np.inf
-        nearest = int(np.argmin(distance))
-        group = partner.get(level, {int(level)}) | partner.get(nearest, {nearest})
-        for member in group:
-            partner[member] = group
-    groups = {id(group): sorted(group) for group in partner.values()}
-    return list(groups.values())
-
-
-def _orthonormal_cluster(
-    truncation: Truncation, system: EigenSystem, members: list[int]
-) -> tuple[NDArray[Any], NDArray[Any], NDArray[Any]]:
-    """Right basis (orthonormal), dual left basis and Schur block of a cluster, from ordered Schur forms."""
-    matrix = truncation.dense.astype(complex)
-    basis, schur = _leading_schur(matrix, system.values[members])
-    dual, _ = _leading_schur(matrix.T, system.values[members])
-    dual = dual @ np.linalg.inv(basis.T @ dual)
-    return basis, dual, schur
-
-
-def _leading_schur(matrix: NDArray[Any], values: NDArray[Any]) -> tuple[NDArray[Any], NDArray[Any]]:
-    from scipy.linalg import schur
-
-    size = len(values)
-    ranks = np.abs(np.linalg.eigvals(matrix)[:, None] - values).min(axis=1)
-    reach = np.sort(ranks)[size - 1 : size + 1].mean()
-    form, vectors, _ = schur(matrix, output="complex", sort=lambda x: bool(np.abs(x - values).min() < reach))
-    return vectors[:, :size], form[:size, :size]
+__all__ = ["eigenvalue_errors", "mass_errors"]
 
 
 def eigenvalue_errors(
@@ -159,27 +48,28 @@ def eigenvalue_errors(
     -------
     Shape (levels,).
     """
-    blocks = [*spectral_blocks(truncation, system, levels), *_left_over(truncation, system)]
-    values = np.concatenate([block.values for block in blocks])
-    owner = np.repeat(np.arange(len(blocks)), [len(block.values) for block in blocks])
-    up, down, right, left = np.array(
-        [(block.upwards, block.downwards, block.right, block.left) for block in blocks]
-    ).T[:, :, None]
-    departure = np.array([block.departure for block in blocks])
-    order = np.array([len(block.values) for block in blocks])
-    around = np.repeat([block.around for block in blocks], order)
     noise = truncation.noise if noise is None else noise
-    beyond = truncation.outer_norm
-    errors = np.full(levels, np.inf)
-    for level, centre in enumerate(system.values[:levels]):
-        room = abs(centre) - beyond
+    errors = _radii(truncation, system.values[:levels], complete_blocks(truncation, system, levels), noise)
+    reachable = np.abs(system.values[:levels]) > truncation.outer_norm
+    if system.rest or np.isfinite(errors[reachable]).all():
+        return errors
+    again = _radii(truncation, system.values[:levels], leading_blocks(truncation, system, levels), noise)
+    return np.minimum(errors, again)
+
+
+def _radii(
+    truncation: Truncation, centres: NDArray[Any], blocks: list[Block], noise: float
+) -> NDArray[np.float64]:
+    sizes = [(block.upwards, block.downwards, block.right, block.left) for block in blocks]
+    up, down, right, left = np.array(sizes).T[:, :, None]
+    errors = np.full(len(centres), np.inf)
+    for level, centre in enumerate(centres):
+        room = abs(centre) - truncation.outer_norm
         if room <= 0:
             continue
         radii = _candidate_radii(room, abs(centre), noise)
         margin = room - radii
-        distance = np.where(around, np.maximum(abs(centre) - values.real, 0.0), np.abs(values - centre))
-        inverse = _resolvent_bound(distance, owner, order, departure, radii)
-        inverse[:, radii >= np.min(distance[around], initial=np.inf)] = np.inf
+        inverse = _resolvent_bounds(blocks, level, centre, radii)
         # one row and one column for coupling and rounding together, by Cauchy and Schwarz
         load = np.sqrt((up**2 / margin + right**2 * noise) * (down**2 / margin + left**2 * noise)) * inverse
         closed = np.flatnonzero(load.sum(axis=0) < 1)
@@ -195,25 +85,24 @@ def _candidate_radii(room: float, size: float, noise: float) -> NDArray[np.float
     return np.geomspace(smallest, room, max(int(np.log(room / smallest) / np.log(1.05)), 3))[:-1]
 
 
-def _resolvent_bound(
-    distance: NDArray[np.float64],
-    owner: NDArray[np.int64],
-    order: NDArray[np.int64],
-    departure: NDArray[np.float64],
-    radii: NDArray[np.float64],
+def _resolvent_bounds(
+    blocks: list[Block], level: int, centre: complex, radii: NDArray[np.float64]
 ) -> NDArray[np.float64]:
-    """Bound of ‖(λ − S)⁻¹‖ for each block, |λ − centre| = radius: shape (blocks, radii)."""
-    apart = np.abs(distance[:, None] - radii)
-    nearest = np.full((len(order), len(radii)), np.inf)
-    np.minimum.at(nearest, owner, apart)
+    """Bound of ‖(λ − S)⁻¹‖ on |λ − centre| = radius: shape (blocks, radii)."""
+    found = np.empty((len(blocks), len(radii)))
+    single = [place for place, block in enumerate(blocks) if len(block.values) == 1]
+    values = np.array([blocks[place].values[0] for place in single])
     with np.errstate(divide="ignore", over="ignore"):
-        step = departure[:, None] / nearest
-        bound = 1 / nearest
-        total = bound.copy()
-        for power in range(1, int(order.max())):
-            bound = bound * step
-            total = total + np.where(order[:, None] > power, bound, 0.0)
-    return total
+        found[single] = 1 / np.abs(np.abs(values - centre)[:, None] - radii)
+        for place, block in enumerate(blocks):
+            if block.clearance is not None:
+                found[place] = 1 / np.maximum(block.clearance[level] - radii, 0.0)
+            elif len(block.values) > 1:
+                apart = np.sort(np.abs(np.abs(block.values - centre)[:, None] - radii), axis=0)
+                factors = np.full(apart.shape, block.departure)
+                factors[0] = 1.0
+                found[place] = np.cumprod(factors / apart, axis=0).sum(axis=0)
+    return found
 
 
 def mass_errors(values: NDArray[Any], errors: NDArray[np.float64]) -> NDArray[np.float64]:

@@ -11,12 +11,13 @@ from numpy.typing import NDArray
 
 from haarloom.algebra.labels import count_up_to, validated_cutoff
 from haarloom.exceptions import ParameterError
-from haarloom.numerics.batch import batch_errors, truncate_batch
+from haarloom.numerics.batch import batch_errors, complete_levels, truncate_batch
 from haarloom.numerics.bounds import mass_errors
 from haarloom.numerics.compile import check_memory
 from haarloom.numerics.cutoff import checked_levels
 from haarloom.numerics.ordering import masses_from
 from haarloom.numerics.parameters import checked_values, plain_numbers
+from haarloom.numerics.threads import single_threaded
 from haarloom.numerics.tracking import tracked
 from haarloom.numerics.verdicts import verdicts_from
 
@@ -62,6 +63,7 @@ class MassBranches:
     fixed: Mapping[str, float | complex]
 
 
+@single_threaded
 def masses_along(
     model: RingModel,
     parameter: str,
@@ -100,7 +102,7 @@ def masses_along(
     check_memory(8 * len(line) * size * size, f"{len(line)} points × {size:,} irreps squared")
     batch = truncate_batch(model, level, {name: array.reshape(-1) for name, array in checked.items()})
     values, right, left = batch.solved()
-    radius = batch_errors(batch, values, right, left, min(count + GUARD, size)).radius
+    radius = batch_errors(batch, complete_levels(batch, values, right, left), min(count + GUARD, size))
     kept = values[:, : radius.shape[1]]
     order = np.concatenate(
         [np.zeros((len(line), 1), dtype=np.int64), 1 + tracked(masses_from(kept))], axis=1

@@ -79,7 +79,7 @@ def automatic_truncation(
         system = solve(truncation, levels)
         cut = eigenvalue_errors(truncation, system, levels, noise=0.0)
         worst = float(np.max(mass_errors(system.values[:levels], cut), initial=float(cut[0])))
-        if worst <= tolerance:
+        if worst <= tolerance or truncation.outside == 0:
             return truncation, system, eigenvalue_errors(truncation, system, levels)
         cutoff += max(1, cutoff // 6)
         if count_up_to(model.group.rank, cutoff) > LARGEST:

@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from haarloom.exceptions import ConvergenceError
 from haarloom.numerics.dense import EigenSystem
-from haarloom.numerics.ordering import spectral_order
+from haarloom.numerics.ordering import clean_cut, spectral_order
 from haarloom.numerics.sectors import sectors
 from haarloom.numerics.site_action import FusionAction
 from haarloom.numerics.truncation import Truncation
@@ -107,14 +107,14 @@ def _without_gaps(
     from scipy.sparse.linalg import LinearOperator
 
     for attempt in range(3):
-        basis, _ = np.linalg.qr(vectors)
+        basis = _orthonormal(truncation, values, vectors)
         last = np.abs(values).min()
 
         def left_over(x: NDArray[Any], basis: NDArray[Any] = basis) -> NDArray[Any]:
             image = operator @ (x - basis @ (basis.conj().T @ x))
             return np.asarray(image - basis @ (basis.conj().T @ image))
 
-        dtype = float if truncation.hermitian and truncation.real else complex
+        dtype = float if truncation.real else complex
         probe = LinearOperator(operator.shape, matvec=left_over, dtype=dtype)
         start = np.random.default_rng(attempt + 1).standard_normal(operator.shape[0])
         size, extra = _arpack(truncation, probe, 1, start.astype(dtype), tolerance=1e-3)
@@ -133,26 +133,26 @@ def _without_gaps(
     )
 
 
+def _orthonormal(truncation: Truncation, values: NDArray[Any], vectors: NDArray[Any]) -> NDArray[Any]:
+    """Orthonormal basis of the span of the vectors; real where T is, made of real and imaginary parts."""
+    if truncation.real and np.iscomplexobj(vectors):
+        upper = np.imag(values) >= 0
+        paired = np.imag(values) > 0
+        vectors = np.concatenate([vectors[:, upper].real, vectors[:, paired].imag], axis=1)
+    return np.linalg.qr(vectors)[0]
+
+
 def _assembled(
     truncation: Truncation, values: NDArray[Any], right: NDArray[Any], levels: int
 ) -> EigenSystem:
     order = spectral_order(values)
-    count = _clean_cut(values[order], levels, levels + GUARD)
+    count = clean_cut(values[order], levels, levels + GUARD)
     bound = float(np.abs(values[order[count - 1 : count + 1]]).min()) if count < len(order) else 0.0
     values, right = values[order[:count]], right[:, order[:count]]
     right = right / np.linalg.norm(right, axis=0)
     left = _left(truncation, right, values)
     residual = np.linalg.norm(truncation.apply(right) - right * values, axis=0)
     return EigenSystem(values, right, left, residual, bound, "Krylov")
-
-
-def _clean_cut(values: NDArray[Any], levels: int, most: int) -> int:
-    """A number of levels ≥ ``levels`` after which no degenerate or conjugate partner is left behind."""
-    sizes = np.abs(values[: most + 1])
-    if len(sizes) <= levels:
-        return len(sizes)
-    ratio = sizes[levels:] / sizes[levels - 1 : -1]
-    return levels + int(np.argmin(ratio))
 
 
 def _left(truncation: Truncation, right: NDArray[Any], values: NDArray[Any]) -> NDArray[Any]:

@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["masses_from", "spectral_order"]
+__all__ = ["clean_cut", "masses_from", "spectral_order"]
 
 TIE = 1e-9
 """Moduli that agree to this relative accuracy count as equal when levels are ordered."""
@@ -46,3 +46,23 @@ def masses_from(values: NDArray[Any]) -> NDArray[np.complex128]:
     masses.imag[masses.imag <= -np.pi] = np.pi
     masses.imag[masses.imag == 0] = 0.0
     return np.asarray(masses)
+
+
+def clean_cut(values: NDArray[Any], levels: int, most: int) -> int:
+    """A number of levels, at least ``levels``, after which |λ| drops most clearly.
+
+    No degenerate or conjugate partner is left behind.
+
+    Parameters
+    ----------
+    values
+        In spectral order, shape (m,).
+    most
+        Largest number to return.
+    """
+    sizes = np.abs(values[: most + 1])
+    if len(sizes) <= levels:
+        return len(sizes)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        ratio = np.nan_to_num(sizes[levels:] / sizes[levels - 1 : -1], nan=1.0)
+    return levels + int(np.argmin(ratio))

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import numpy as np
+
 from haarloom.numerics.sectors import component_labels
 from haarloom.numerics.truncation import Truncation
 
@@ -15,14 +17,15 @@ def perron_frobenius(truncation: Truncation) -> tuple[bool, str]:
     elements ≥ 0 make the spectral radius an eigenvalue; a connected pattern makes it simple
     (O. Perron, *Math. Ann.* 64 (1907) 248; G. Frobenius, 1912).
     """
-    weights = truncation.site[1]
-    positive = truncation.real and bool((weights >= 0).all()) and bool((truncation.phase > 0).all())
+    _, weights, errors = truncation.site
+    positive = truncation.real and bool((weights >= -errors).all()) and bool((truncation.phase > 0).all())
     if not positive:
         return False, (
             "Some elements of T are negative or complex, so that λ_0, the largest |λ|, need not be "
             "real, positive or simple (Perron and Frobenius do not apply)."
         )
-    parts = component_labels(truncation)[0]
+    labels = component_labels(truncation)[1]
+    parts = len(np.unique(labels[truncation.root[: truncation.size] > 0]))
     if parts > 1:
         return False, (
             f"All elements of T are ≥ 0 but its pattern falls into {parts} parts: λ_0 is real and "

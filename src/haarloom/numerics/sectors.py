@@ -18,21 +18,22 @@ __all__ = ["component_labels", "sectors"]
 def component_labels(truncation: Truncation) -> tuple[int, NDArray[np.int64]]:
     """Number of parts that T does not connect, and the part of each irrep, shape (n,).
 
-    Read off the pattern for an action by fusion; else from the N-alities that W carries.
+    An irrep with k_r = 0 is a part of its own. Read off the pattern for an action by fusion; else from the N-alities that W carries.
     """
     from scipy import sparse
     from scipy.sparse.csgraph import connected_components
 
     action, size = truncation.action, truncation.size
     if isinstance(action, FusionAction):
-        kept = (action.rows < size) & (action.elements != 0)
+        alive = truncation.root > 0
+        kept = (action.rows < size) & (action.elements != 0) & alive[action.rows] & alive[action.columns]
         places = (action.rows[kept], action.columns[kept])
         pattern = sparse.csr_array((np.ones(int(kept.sum())), places), shape=(size, size))
         parts, labels = connected_components(pattern, directed=True, connection="strong")
         return int(parts), np.asarray(labels, dtype=np.int64)
-    irreps, weights = truncation.site
+    irreps, weights, errors = truncation.site
     order = truncation.rank + 1
-    step = gcd(order, *(irrep.nality for irrep, weight in zip(irreps, weights, strict=True) if weight != 0))
+    step = gcd(order, *(irrep.nality for irrep, w, error in zip(irreps, weights, errors, strict=True) if abs(w) > error))
     labels = label_array(truncation.rank, truncation.cutoff)
     classes, part = np.unique(labels @ np.arange(1, order) % step, return_inverse=True)
     return len(classes), np.asarray(part, dtype=np.int64)

@@ -11,7 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from haarloom.exceptions import ConvergenceError
-from haarloom.numerics.fusion import FusionPattern, dense_fusion_pattern, fusion_pattern
+from haarloom.numerics.fusion import FusionPattern, fusion_pattern
 
 if TYPE_CHECKING:
     from haarloom.actions.protocols import SiteWeight
@@ -47,12 +47,8 @@ def site_components(site: SiteWeight, cutoff: int, outer: int) -> SiteComponents
     For an infinite W every irrep c with Σ c ≤ cutoff + outer enters: no other can connect a ket
     and a bra of these sets, so that nothing is cut off inside.
     """
-    group = site.group
-    if site.finite:
-        support = tuple(site.support())
-        return SiteComponents(site, support, fusion_pattern(support, group.rank, cutoff, outer))
-    support = tuple(group.irreps(cutoff + outer))
-    return SiteComponents(site, support, dense_fusion_pattern(group, cutoff, outer))
+    support = tuple(site.support() if site.finite else site.group.irreps(cutoff + outer))
+    return SiteComponents(site, support, fusion_pattern(support, site.group.rank, cutoff, outer))
 
 
 def outward_reach(site: SiteWeight, cutoff: int, values: Mapping[str, Any]) -> int:

@@ -19,6 +19,7 @@ from haarloom.numerics.ordering import masses_from
 from haarloom.numerics.parameters import checked_values, plain_numbers
 from haarloom.numerics.premises import perron_frobenius
 from haarloom.numerics.solve import solve
+from haarloom.numerics.threads import single_threaded
 from haarloom.numerics.truncation import Truncation, truncate
 from haarloom.numerics.verdicts import verdicts_from
 
@@ -103,6 +104,7 @@ class Spectrum:
         return spectrum_html(self)
 
 
+@single_threaded
 def spectrum(model: RingModel, levels: int = 6, cutoff: int | None = None, **values: Any) -> Spectrum:
     """Leading eigenvalues, masses and vectors at one point.
 
@@ -189,6 +191,9 @@ def _result(
 def _status(truncation: Truncation, errors: NDArray[np.float64], chosen: bool) -> str:
     premise = perron_frobenius(truncation)[1]
     size = f"cutoff {truncation.cutoff} ({truncation.size:,} irreps)"
+    if truncation.outside == 0 and not np.isfinite(errors).all():
+        rank = int(np.argmin(np.isfinite(errors)))
+        return f"{premise} No irrep beyond {size} has k_r ≠ 0: T has rank {rank}, further masses are infinite."
     if not np.isfinite(errors).all():
         level = int(np.argmin(np.isfinite(errors)))
         return (

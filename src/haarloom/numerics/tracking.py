@@ -9,6 +9,9 @@ from numpy.typing import NDArray
 
 __all__ = ["tracked"]
 
+FAR = 1e6
+"""Stands for an infinite mass when branches are matched."""
+
 
 def tracked(values: NDArray[Any]) -> NDArray[np.int64]:
     """Permutation at each point that makes every level a continuous branch.
@@ -29,6 +32,8 @@ def tracked(values: NDArray[Any]) -> NDArray[np.int64]:
     """
     from scipy.optimize import linear_sum_assignment
 
+    # a vanishing λ has an infinite mass: place it far away, but within reach of arithmetic
+    values = np.where(np.isfinite(values), values, FAR)
     points, count = values.shape
     order = np.empty((points, count), dtype=np.int64)
     if points:
@@ -38,6 +43,8 @@ def tracked(values: NDArray[Any]) -> NDArray[np.int64]:
         before = values[i - 2, order[i - 2]] if i > 1 else last
         # a merger has a square root in it: extrapolating past one would overshoot
         guess = last + np.where(np.abs(last - before) < 0.5 * _gaps(last), last - before, 0.0)
+        # nothing to extrapolate from an infinite mass: such a level takes its place in spectral order
+        guess = np.where(np.abs(last) < FAR, guess, values[i])
         cost = np.abs(guess[:, None] - values[i][None, :]) ** 2
         order[i] = linear_sum_assignment(cost)[1]
         _upper_first(values[i], order[i], last)

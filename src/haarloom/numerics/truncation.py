@@ -20,6 +20,7 @@ from numpy.typing import NDArray
 
 from haarloom.algebra.labels import count_up_to
 from haarloom.exceptions import ConvergenceError
+from haarloom.numerics.fusion import count_weights
 from haarloom.numerics.labels import conjugation
 from haarloom.numerics.link_numbers import link_coefficients
 from haarloom.numerics.site_action import EPS, FusionAction, SiteAction, torus_action
@@ -30,10 +31,10 @@ if TYPE_CHECKING:
     from haarloom.algebra.irrep import Irrep
     from haarloom.ring.model import RingModel
 
-__all__ = ["EPS", "Truncation", "phase_of", "truncate"]
+__all__ = ["EPS", "Truncation", "input_errors", "phase_of", "truncate"]
 
-MANY_WEIGHTS = 150
-"""Distinct weights of W from which transforms beat fusion (measured for SU(3) at 500 to 50,000 irreps)."""
+TRANSFORM_COST = 8.0
+"""Elements of a sparse matrix that cost as much as one grid point and one level of a transform (measured)."""
 
 LAPACK_SCALE = 1000
 """Largest basis whose rounding is measured by the Frobenius norm, as LAPACK's error bounds are."""
@@ -52,7 +53,7 @@ class Truncation:
     action
         W as a map from the basis to the bras up to ``outer``.
     site
-        (irreps c, w_c) that decide about signs and symmetry of W.
+        (irreps c, w_c, errors) that decide about signs and symmetry of W.
     norm, outside, tail, outside_far
         Bounds of ‖W‖; of |k_r| beyond the basis; of the part of W that couples beyond ``outer``;
         of |k_r| beyond ``outer``.
@@ -67,7 +68,7 @@ class Truncation:
     root: NDArray[np.float64]
     phase: NDArray[Any]
     action: SiteAction
-    site: tuple[tuple[Irrep, ...], NDArray[Any]]
+    site: tuple[tuple[Irrep, ...], NDArray[Any], NDArray[np.float64]]
     norm: float
     outside: float
     tail: float
@@ -103,10 +104,10 @@ class Truncation:
         return positive and self._site_matches(np.conj)
 
     def _site_matches(self, image: Any) -> bool:
-        irreps, weights = self.site
+        irreps, weights, errors = self.site
         known = {irrep: weight for irrep, weight in zip(irreps, weights, strict=True)}
         mirror = np.array([known.get(irrep.conjugate, 0.0) for irrep in irreps])
-        return bool((np.abs(image(mirror) - weights) <= 8 * EPS * np.abs(weights)).all())
+        return bool((np.abs(image(mirror) - weights) <= 8 * EPS * np.abs(weights) + 2 * errors).all())
 
     @cached_property
     def sparse(self) -> Any:
@@ -218,24 +219,37 @@ def truncate(model: RingModel, cutoff: int, values: Mapping[str, Any]) -> Trunca
                 f"{name} is not finite at {dict(values)} (cutoff {cutoff}): "
                 "the weight diverges there; move the parameters into its domain."
             )
-    dimensions = np.array([irrep.dimension for irrep in support], dtype=float)
-    relative = float(np.max(np.divide(k_errors, np.abs(k), out=np.zeros(k.shape), where=k != 0)))
+    root = np.sqrt(np.abs(k))
     norm = float(np.max(site.norm_bound(values)))
     return Truncation(
         rank=rank,
         cutoff=cutoff,
         size=count_up_to(rank, cutoff),
         outer=outer,
-        root=np.sqrt(np.abs(k)),
+        root=root,
         phase=phase_of(k),
         action=_site_action(site, values, cutoff, outer, weights),
-        site=(support, weights),
+        site=(support, weights, weight_errors),
         norm=norm,
         outside=float(np.max(link.largest_outside(cutoff, values))),
         tail=0.0 if site.finite else float(np.max(site.tail_bound(outer - cutoff, values))),
         outside_far=float(np.max(link.largest_outside(outer, values))),
-        input_error=float(np.max(np.abs(k))) * (float(weight_errors @ dimensions) + relative * norm),
+        input_error=float(input_errors(support, weight_errors, norm, root, k_errors)),
     )
+
+
+def input_errors(
+    support: tuple[Irrep, ...],
+    weight_errors: NDArray[np.float64],
+    norm: Any,
+    root: NDArray[np.float64],
+    k_errors: NDArray[np.float64],
+) -> Any:
+    """Bound of ‖δ(S W S)‖ ≤ ‖S‖² Σ |δw_c| d_c + 2 ‖δS‖ ‖W‖ ‖S‖, with δS = δk/(2S); last axes irreps."""
+    dimensions = np.array([irrep.dimension for irrep in support], dtype=float)
+    shift = np.divide(k_errors, root, out=np.sqrt(k_errors), where=root > 0).max(axis=-1)
+    largest = root.max(axis=-1)
+    return largest**2 * (weight_errors @ dimensions) + shift * norm * largest
 
 
 def _site_numbers(
@@ -250,15 +264,19 @@ def _site_numbers(
 def _site_action(
     site: SiteWeight, values: Mapping[str, Any], cutoff: int, outer: int, weights: NDArray[Any]
 ) -> SiteAction:
-    """Fusion for a W of few weights, transforms for others."""
-    if site.finite and sum(irrep.dimension for irrep in site.support()) <= MANY_WEIGHTS:
-        components = site_components(site, cutoff, outer)
-        pattern = components.pattern
-        return FusionAction(
-            pattern.size, pattern.outer_size, pattern.rows, pattern.columns, components.elements(weights)
-        )
-    real = not np.iscomplexobj(weights)
-    return torus_action(site, values, cutoff, outer, real, negligible_beyond(site, values, EPS))
+    """Fusion where its elements are few, transforms where they are many."""
+    reach = negligible_beyond(site, values, EPS)
+    rank = site.group.rank
+    if site.finite:
+        elements = count_up_to(rank, cutoff) * count_weights(tuple(site.support()))
+        grid = (cutoff + outer + 2 * rank + reach + 1) ** rank
+        if elements < TRANSFORM_COST * grid * np.log2(grid):
+            components = site_components(site, cutoff, outer)
+            pattern = components.pattern
+            return FusionAction(
+                pattern.size, pattern.outer_size, pattern.rows, pattern.columns, components.elements(weights)
+            )
+    return torus_action(site, values, cutoff, outer, not np.iscomplexobj(weights), reach)
 
 
 def phase_of(k: NDArray[Any]) -> NDArray[Any]:

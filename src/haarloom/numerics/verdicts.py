@@ -7,12 +7,15 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["COMPLEX", "PAIR", "REAL", "UNDECIDED", "verdicts_from"]
+__all__ = ["COMPLEX", "PAIR", "REAL", "UNDECIDED", "VERDICTS", "verdicts_from"]
 
 REAL = "real"
 PAIR = "complex pair"
 COMPLEX = "complex"
 UNDECIDED = "undecided"
+
+VERDICTS = (REAL, PAIR, COMPLEX, UNDECIDED)
+"""All verdicts; a scan stores their positions here."""
 
 
 def verdicts_from(

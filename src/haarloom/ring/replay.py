@@ -32,11 +32,14 @@ if TYPE_CHECKING:
 
 __all__ = ["ReplayedStep", "Verification", "replay"]
 
+VISIBLE = 0.03
+"""Link coefficients are checked at couplings where they are at least this large, if there are any."""
+
 SAMPLES = 7
 """Random torus points per pointwise statement: a false finite identity survives none of them."""
 
-LINK_SCALES = (1 / 16, 8.0)
-"""Factors on the link parameters: couplings where high irreps matter, for either way of counting."""
+LINK_SCALES = (1, 1 / 64, 1 / 16, 1 / 4, 4, 16)
+"""Factors on the link parameters, to find couplings where the coefficients at hand can be seen."""
 
 
 @dataclass(frozen=True)
@@ -79,18 +82,13 @@ class NotReplayable(Exception):
     """A statement for which this model has no independent route; carries the reason."""
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Torus:
-    """The model at fixed random values, seen on the maximal torus only.
-
-    ``scaled`` holds the same with weaker and stronger link parameters: a coefficient that is tiny at
-    one of them is checked where it is large, so that an error cannot hide below the tolerance.
-    """
+    """The model at fixed random values, seen on the maximal torus only."""
 
     model: RingModel
     values: Mapping[str, float]
     angles: np.ndarray
-    scaled: tuple[Torus, ...] = ()
 
     @cached_property
     def site(self) -> TorusFunction:
@@ -126,21 +124,33 @@ class Torus:
 
 def replay(derivation: Derivation, seed: int, tolerance: float) -> Verification:
     """Replay each step; see :meth:`haarloom.ring.derivation.Derivation.verify`."""
-    model = derivation.model
-    torus = _random_torus(model, np.random.default_rng(seed))
+    torus = _random_torus(derivation, np.random.default_rng(seed))
     steps = tuple(_replay_step(step.title, step.claims, torus, tolerance) for step in derivation.steps)
     return Verification(steps, torus.values, tolerance)
 
 
-def _random_torus(model: RingModel, rng: np.random.Generator) -> Torus:
+def _random_torus(derivation: Derivation, rng: np.random.Generator) -> Torus:
+    """Random values, with the link parameters scaled to where the two link coefficients can be seen.
+
+    Of the scales at which both exceed VISIBLE the one with the smallest is taken, where the plaquette
+    weight is smoothest and its quadrature cheapest; a tiny coefficient would hide any error in it.
+    """
+    model = derivation.model
     values = {symbol.name: float(rng.uniform(0.2, 0.8)) for symbol in model.parameters}
     angles = rng.uniform(-np.pi, np.pi, size=(SAMPLES, model.group.rank))
-    link_names = {symbol.name for symbol in model.link.parameters}
-    scaled = tuple(
-        Torus(model, {name: v * factor if name in link_names else v for name, v in values.items()}, angles)
-        for factor in LINK_SCALES
+    links = {symbol.name for symbol in model.link.parameters}
+    draws = (
+        Torus(model, {name: v * scale if name in links else v for name, v in values.items()}, angles)
+        for scale in LINK_SCALES
     )
-    return Torus(model, values, angles, scaled)
+    sizes = {draw: _smallest_coefficient(draw, derivation) for draw in draws}
+    return min(sizes, key=lambda draw: (sizes[draw] < VISIBLE, abs(np.log(sizes[draw] / VISIBLE))))
+
+
+def _smallest_coefficient(torus: Torus, derivation: Derivation) -> float:
+    link = torus.model.link
+    ends = (abs(torus.number(link.coefficient(irrep))) for irrep in (derivation.bra, derivation.ket))
+    return max(min(ends), 1e-300)
 
 
 def _replay_step(title: str, claims: tuple[Claim, ...], torus: Torus, tolerance: float) -> ReplayedStep:
@@ -208,11 +218,9 @@ def _(claim: SiteElementClaim, torus: Torus) -> float:
 
 @residual.register
 def _(claim: LinkFactorClaim, torus: Torus) -> float:
-    at = max((torus, *torus.scaled), key=lambda place: abs(place.number(claim.value)))
-    value = at.number(claim.value)
-    return max(
-        _distance(value, at.link_coefficient(claim.irrep)), _distance(at.number(claim.root) ** 2, value)
-    )
+    value = torus.number(claim.value)
+    stated = _distance(value, torus.link_coefficient(claim.irrep))
+    return max(stated, _distance(torus.number(claim.root) ** 2, value))
 
 
 @residual.register

@@ -8,8 +8,8 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from haarloom.exceptions import ConvergenceError, SizeError
-from haarloom.torus.alcove import alcove_grid
+from haarloom.exceptions import ConvergenceError
+from haarloom.torus.alcove import alcove_grid, alcove_size
 from haarloom.torus.characters import character
 
 if TYPE_CHECKING:
@@ -19,9 +19,10 @@ if TYPE_CHECKING:
 __all__ = ["TorusFunction"]
 
 SETTLED = 1e-13
-"""Largest relative change on refining the grid that counts as converged."""
+"""Largest change on refining the grid that counts as converged, against ∫|f| and the two dimensions."""
 
-REFINEMENTS = 8
+AFFORDABLE = 250_000
+"""Largest grid, in tuples looked through, on which a function of unknown reach is sampled."""
 
 
 @dataclass(frozen=True)
@@ -57,13 +58,10 @@ class TorusFunction:
         degree = sum(bra.labels) + sum(ket.labels) + 2 * self.group.rank + 1
         if self.reach is not None:
             return self._integral(bra, ket, degree + self.reach)
-        points, before = degree + 8, None
-        for _ in range(REFINEMENTS):
-            try:
-                value = self._integral(bra, ket, points)
-            except SizeError:
-                break
-            if before is not None and abs(value - before) <= SETTLED * self._scale(points):
+        points, before, size = degree + 8, None, bra.dimension * ket.dimension
+        while alcove_size(self.group, points) <= AFFORDABLE:
+            value = self._integral(bra, ket, points)
+            if before is not None and abs(value - before) <= SETTLED * size * self._scale(points):
                 return value
             points, before = points + points // 2, value
         raise ConvergenceError(

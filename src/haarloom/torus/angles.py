@@ -39,9 +39,12 @@ def full_angles(n: int, angles: Any) -> NDArray[np.float64]:
         raise ParameterError(
             "angles are not an array of real numbers; give radians, last axis N − 1 or N."
         ) from None
+    if not np.all(np.isfinite(array)):
+        raise ParameterError("angles given that are not finite; give radians.")
     if array.ndim == 0 or array.shape[-1] not in (n - 1, n):
         raise ParameterError(
-            f"angles of shape {array.shape} given; the last axis must hold {n - 1} eigenphases of SU({n}), or all {n}."
+            f"angles of shape {array.shape} given; the last axis must hold {n - 1} eigenphases of "
+            f"SU({n}), or all {n}."
         )
     total = array.sum(axis=-1, keepdims=True)
     if array.shape[-1] == n - 1:

@@ -48,8 +48,9 @@ def characters(irreps: Sequence[Irrep], angles: Any) -> NDArray[np.complex128]:
 
     Notes
     -----
-    For N ≤ 3, Jacobi and Trudi's determinant of complete symmetric functions, which are sums without cancellation. For
-    N ≥ 4, the sum over weights, which has none either, as one matrix product of monomials and multiplicities.
+    For N ≤ 3, Jacobi and Trudi's determinant of complete symmetric functions, which are sums without
+    cancellation. For N ≥ 4, the sum over weights, which has none either, as one matrix product of monomials
+    and multiplicities.
     """
     if not irreps:
         raise GroupError("no irreps given; give at least one.")

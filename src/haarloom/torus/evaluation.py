@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
+from functools import lru_cache
 from typing import Any
 
 import numpy as np
@@ -18,7 +19,15 @@ __all__ = ["evaluate"]
 
 
 def evaluate(function: ClassFunction, angles: Any, values: Mapping[str, Any]) -> NDArray[np.complex128]:
-    """Σ_r a_r(values) χ_r(angles); arrays of values broadcast against the leading axes of the angles.
+    """Σ_r a_r(values) χ_r(angles).
+
+    Parameters
+    ----------
+    function : ClassFunction
+    angles : array of shape (..., N − 1) or (..., N), radians
+    values : mapping from parameter name to number or array
+        Arrays broadcast against the leading axes ``...`` of the angles. Names the function does not use are
+        ignored.
 
     Raises
     ------
@@ -34,9 +43,16 @@ def evaluate(function: ClassFunction, angles: Any, values: Mapping[str, Any]) ->
     if not irreps:
         return np.zeros(full_angles(function.group.n, angles).shape[:-1], dtype=np.complex128)
     table = characters(irreps, angles)
-    arguments = [np.asarray(values[symbol.name]) for symbol in function.parameters]
-    expressions = [function[irrep] for irrep in irreps]
-    numbers = sympy.lambdify(function.parameters, expressions, "numpy")(*arguments)
+    numbers = _compiled(function)(*(np.asarray(values[symbol.name]) for symbol in function.parameters))
     terms = [np.asarray(number) * table[..., place] for place, number in enumerate(numbers)]
     result: NDArray[np.complex128] = np.asarray(sum(terms), dtype=np.complex128)
     return result
+
+
+@lru_cache(maxsize=64)
+def _compiled(function: ClassFunction) -> Callable[..., list[Any]]:
+    """The coefficients as one NumPy function of the parameters."""
+    compiled: Callable[..., list[Any]] = sympy.lambdify(
+        function.parameters, list(function.coefficients.values()), "numpy"
+    )
+    return compiled

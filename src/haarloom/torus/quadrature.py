@@ -40,7 +40,8 @@ def grid_angles(group: SU, points: int) -> NDArray[np.float64]:
     if validated_points(points) ** group.rank > _MOST_POINTS:
         raise SizeError(
             f"{points} points an angle make {points**group.rank:,} grid points for {group} "
-            f"({points**group.rank * 8 * group.rank / 2**30:.1f} GiB of angles alone), more than {_MOST_POINTS:,}: "
+            f"({points**group.rank * 8 * group.rank / 2**30:.1f} GiB of angles alone), more than "
+            f"{_MOST_POINTS:,}: "
             "take fewer points."
         )
     line = 2 * np.pi * np.arange(points) / points
@@ -69,7 +70,8 @@ def haar_grid(group: SU, points: int) -> tuple[NDArray[np.float64], NDArray[np.f
     """
     if validated_points(points) < 2 * group.n - 1:
         raise ParameterError(
-            f"{points} points an angle given; {group} needs at least {2 * group.n - 1} to integrate even 1 exactly."
+            f"{points} points an angle given; {group} needs at least {2 * group.n - 1} to integrate "
+            "even 1 exactly."
         )
     angles = grid_angles(group, points).reshape(-1, group.rank)
     return angles, weyl_density(group, angles) / len(angles)
@@ -78,7 +80,7 @@ def haar_grid(group: SU, points: int) -> tuple[NDArray[np.float64], NDArray[np.f
 def haar_integral(
     group: SU, function: Callable[[NDArray[np.float64]], Any], points: int
 ) -> tuple[complex, float]:
-    """∫ dP f(P) for a class function given at angles, with the change on halving the grid as its error estimate.
+    """∫ dP f(P) for a class function given at angles, with the change on halving the grid as error.
 
     Returns
     -------

@@ -1,8 +1,9 @@
-"""Character coefficients of a function on the maximal torus, by Fourier transform and Weyl antisymmetrisation.
+"""Character coefficients of a function on the torus, by Fourier transform and antisymmetrisation.
 
-With F̂(c) the Fourier coefficient of f at content c, ⟨r|f|s⟩ = ∫dP χ_r* f χ_s = Σ_σ sgn(σ) F̂(r + ρ − σ(s + ρ)), the
-sum over the permutations of N. It follows from Weyl's integration formula: the two denominators of the characters
-cancel the measure, and one antisymmetric sum is spent on the N! of it. s trivial gives the character coefficients.
+With F̂(c) the Fourier coefficient of f at content c, ⟨r|f|s⟩ = ∫dP χ_r* f χ_s = Σ_σ sgn(σ) F̂(r + ρ − σ(s +
+ρ)), the sum over the permutations of N. It follows from Weyl's integration formula: the two denominators of
+the characters cancel the measure, and one antisymmetric sum is spent on the N! of it. s trivial gives the
+character coefficients.
 """
 
 from __future__ import annotations
@@ -33,7 +34,8 @@ def character_coefficients(
     ----------
     group : SU
     function : callable
-        Takes angles of shape (..., N − 1), returns values of shape (...); called on a grid of 2·points an angle.
+        Takes angles of shape (..., N − 1), returns values of shape (...); called on a grid of 2·points an
+        angle.
     irreps : sequence of Irrep
         The c whose coefficients are wanted, n of them.
     points : int
@@ -44,7 +46,8 @@ def character_coefficients(
     coefficients : complex ndarray (n,)
         From the fine grid.
     error : ndarray (n,)
-        Difference to the coarse grid: an estimate of the aliasing error of the *coarse* one, so a cautious one.
+        Difference to the coarse grid: an estimate of the aliasing error of the *coarse* one, so a cautious
+        one.
     """
     fine, error = matrix_elements(group, function, irreps, [group.trivial], points)
     return fine[:, 0], error[:, 0]
@@ -96,7 +99,7 @@ def _sign(order: tuple[int, ...]) -> int:
 
 
 def _check_points(group: SU, rows: Sequence[Irrep], columns: Sequence[Irrep], points: int) -> None:
-    """Exponents up to ±reach must not wrap around the coarse grid, or the estimate would compare two aliases."""
+    """Exponents up to ±reach must not wrap around the coarse grid, or it would compare two aliases."""
     reach = (
         max(sum(irrep.labels) for irrep in rows)
         + max(sum(irrep.labels) for irrep in columns)
@@ -104,6 +107,7 @@ def _check_points(group: SU, rows: Sequence[Irrep], columns: Sequence[Irrep], po
     )
     if validated_points(points) <= 2 * reach:
         raise ParameterError(
-            f"{points} points an angle given; exponents up to ±{reach} are asked for, so at least {2 * reach + 1} are "
+            f"{points} points an angle given; exponents up to ±{reach} are asked for, so at least "
+            f"{2 * reach + 1} are "
             "needed."
         )

@@ -22,7 +22,7 @@ class Ruler:
     def __init__(self, label: str, *, upright: bool = False, ticks: int = 6) -> None:
         self._most = ticks
         self.scale = bqplot.LinearScale(min=0.0, max=1.0)
-        placement = {"orientation": "vertical", "side": "left"} if upright else {}
+        placement = {"side": "left"} if upright else {}
         self.axis = bqplot.Axis(
             scale=self.scale,
             label=label,
@@ -43,7 +43,7 @@ class Ruler:
 
 
 def figure(
-    marks: Sequence[bqplot.Mark], across: Ruler, up: Ruler, *, height: int = 240, **options: Any
+    marks: Sequence[bqplot.Mark], *axes: bqplot.Axis, height: int = 240, **options: Any
 ) -> bqplot.Figure:
     """A figure that fills the width of its column."""
     settings: dict[str, Any] = {
@@ -54,7 +54,7 @@ def figure(
         "display_toolbar": False,
         "background_style": {"fill": "transparent"},
     }
-    return bqplot.Figure(marks=list(marks), axes=[across.axis, up.axis], **(settings | options))
+    return bqplot.Figure(marks=list(marks), axes=list(axes), **(settings | options))
 
 
 def padded(low: float, high: float, share: float = 0.06) -> tuple[float, float]:

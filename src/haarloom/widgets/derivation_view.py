@@ -38,14 +38,18 @@ class DerivationView(ipywidgets.HTMLMath):
 def derivation_html(derivation: Derivation, verification: Verification | None, excuse: str = "") -> str:
     """The steps as an ordered list; statements between dollar signs for MathJax."""
     outcomes = verification.steps if verification else (None,) * len(derivation.steps)
-    items = "".join(step_html(step, outcome) for step, outcome in zip(derivation.steps, outcomes, strict=True))
+    items = "".join(
+        step_html(step, outcome) for step, outcome in zip(derivation.steps, outcomes, strict=True)
+    )
     note = f'<p class="hl-verified">{escape(excuse)}</p>' if excuse else ""
     return f'<ol class="hl-steps">{items}</ol>{note}'
 
 
 def step_html(step: Step, outcome: ReplayedStep | None) -> str:
     """Title, mark and statements of one step."""
-    lines = "".join(f'<div class="hl-statement">$\\displaystyle {escape(line)}$</div>' for line in step.latex())
+    lines = "".join(
+        f'<div class="hl-statement">$\\displaystyle {escape(line)}$</div>' for line in step.latex()
+    )
     return f'<li><div class="hl-step-title"><b>{escape(step.title)}</b>{mark_html(outcome)}</div>{lines}</li>'
 
 

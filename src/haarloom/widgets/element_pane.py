@@ -13,9 +13,9 @@ import traitlets
 from haarloom.exceptions import ParameterError, SizeError
 from haarloom.widgets.copy_code import call, model_lines, values_text
 from haarloom.widgets.derivation_view import DerivationView, derivation_html
-from haarloom.widgets.fields import Field, section
+from haarloom.widgets.fields import Field, column, section
 from haarloom.widgets.grid import MatrixGrid
-from haarloom.widgets.pane import Pane, column
+from haarloom.widgets.pane import Pane
 from haarloom.widgets.parameters import checked_start, ranges_of
 from haarloom.widgets.sliders import ValueSliders
 
@@ -82,7 +82,7 @@ class ElementPane(Pane):
         self._heading = ipywidgets.HTMLMath()
         self._heading.add_class("hl-formula")
         self._steps = DerivationView()
-        controls = column(self._cutoff_field, self._sliders).add_class("hl-across")
+        controls = column(self._cutoff_field, self._sliders, self.fault_line()).add_class("hl-across")
         body = ipywidgets.VBox(
             [controls, column(self._grid), column(section("derivation"), self._heading, self._steps)]
         )
@@ -96,7 +96,7 @@ class ElementPane(Pane):
         self._grid.observe(self._choose, "selected")
         self.observe(self._follow_model, "model")
         self.observe(self.refresh, ["cutoff", "element", "values"])
-        self.refresh()
+        self.first_drawing()
 
     def _read_cutoff(self, text: str) -> int:
         if not text.strip().isdigit():
@@ -105,8 +105,9 @@ class ElementPane(Pane):
 
     def _follow_model(self, _: Any) -> None:
         values = checked_start(self.model, None, keep=self.values)
-        self._sliders.rebuild(values, ranges_of(self.model, self._ranges))
-        self.refresh()
+        with self.one_drawing():
+            self._sliders.rebuild(values, ranges_of(self.model, self._ranges))
+            self.refresh()
 
     def _choose(self, change: Any) -> None:
         row, column = change.new
@@ -127,10 +128,8 @@ class ElementPane(Pane):
         transfer = self.model.transfer_matrix(cutoff=cutoff)
         self._grid.show_pattern(transfer.basis, transfer.pattern())
         self.transfer = transfer
-        size = len(transfer.basis)
-        self.status = (
-            f"{self.model.group}, cutoff {cutoff}: {size} × {size}, {len(transfer.elements)} elements not zero"
-        )
+        size, filled = len(transfer.basis), len(transfer.elements)
+        self.status = f"{self.model.group}, cutoff {cutoff}: {size} × {size}, {filled} elements not zero"
 
     def _draw_derivation(self) -> None:
         assert self.transfer is not None
@@ -148,6 +147,14 @@ class ElementPane(Pane):
         self.verification = self._steps.show(derivation)
         self.derivation = derivation
         self._heading.value = f"$\\displaystyle {_element_latex(derivation)}$"
+
+    @property
+    def summary(self) -> str:
+        """Size of the matrix."""
+        if self.transfer is None:
+            return ""
+        size = len(self.transfer.basis)
+        return f"{size} × {size}, cutoff {self.transfer.cutoff}"
 
     def _source(self) -> str:
         row, column = (f'"{name}"' for name in self.element)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from html import escape
 from typing import Any
 
@@ -11,7 +11,10 @@ import traitlets
 
 from haarloom.exceptions import HaarloomError
 
-__all__ = ["FaultLine", "Field", "section"]
+__all__ = ["LABEL", "FaultLine", "Field", "column", "section"]
+
+LABEL = {"description_width": "88px"}
+"""Style of every labelled control: names in one column."""
 
 
 class FaultLine(ipywidgets.HTML):
@@ -44,6 +47,8 @@ class Field(ipywidgets.VBox):
         Turns a value into text that ``parse`` reads back.
     help
         One sentence on meaning and domain.
+    choices
+        The only texts there are; they make the control a menu.
 
     Attributes
     ----------
@@ -63,11 +68,14 @@ class Field(ipywidgets.VBox):
         parse: Callable[[str], Any],
         show: Callable[[Any], str] = str,
         help: str = "",
+        choices: Sequence[str] = (),
     ) -> None:
         self._parse, self._text_of = parse, show
-        self.control = ipywidgets.Text(
-            value=show(value), description=label, tooltip=help, continuous_update=False, style={"description_width": "88px"}
-        )  # fmt: skip
+        common = {"value": show(value), "description": label, "tooltip": help, "style": LABEL}
+        if choices:
+            self.control = ipywidgets.Dropdown(options=list(choices), **common)
+        else:
+            self.control = ipywidgets.Text(continuous_update=False, **common)
         line = FaultLine()
         hint = ipywidgets.HTML(f'<div class="hl-hint">{escape(help)}</div>')
         hint.add_class("hl-note")
@@ -83,11 +91,13 @@ class Field(ipywidgets.VBox):
             self.fault = ""
             return
         try:
-            self.value = self._parse(self.control.value)
+            value = self._parse(self.control.value)
         except HaarloomError as problem:
             self.fault = str(problem)
-        else:
-            self.fault = ""
+            return
+        # first the line, then the value: whoever uses the value may still find fault with it
+        self.fault = ""
+        self.value = value
 
     def _write(self, _: Any) -> None:
         self.control.value = self._text_of(self.value)
@@ -98,3 +108,8 @@ def section(title: str) -> ipywidgets.HTML:
     heading = ipywidgets.HTML(escape(title))
     heading.add_class("hl-section")
     return heading
+
+
+def column(*children: ipywidgets.Widget) -> ipywidgets.VBox:
+    """Widgets one below the other, which may shrink to the width of the column."""
+    return ipywidgets.VBox(list(children)).add_class("hl-column")

@@ -26,24 +26,25 @@ class _Panel:
             x=[], y=[], scales=scales, fill="inside", colors=["transparent"], stroke_width=0, close_path=True,
         )  # fmt: skip
         self.levels = bqplot.Lines(x=[], y=[], scales=scales, colors=list(DYES), stroke_width=2)
-        self.here = bqplot.Lines(
-            x=[], y=[], scales=scales, colors=[INK], stroke_width=1, line_style="dashed"
-        )
-        self.points = bqplot.Scatter(
-            x=[], y=[], scales=scales, colors=[INK], default_size=30, stroke_width=0
-        )
+        self.here = bqplot.Lines(x=[], y=[], scales=scales, colors=[INK], stroke_width=1, line_style="dashed")
+        self.points = bqplot.Scatter(x=[], y=[], scales=scales, colors=[INK], default_size=30, stroke_width=0)
         marks = [self.shade, self.levels, self.here, self.points]
-        self.figure = figure(marks, self.across, self.up, height=height)
+        self.figure = figure(marks, self.across.axis, self.up.axis, height=height)
 
     def draw(self, grid: np.ndarray, levels: np.ndarray, stretches: Sequence[tuple[float, float]]) -> None:
-        low, high = padded(float(np.nanmin(levels)), float(np.nanmax(levels)))
+        # a vanishing eigenvalue has an infinite mass: the line stops there
+        levels = np.where(np.isfinite(levels), levels, np.nan)
+        low, high = padded(*_ends(levels))
         self.across.span(float(grid[0]), float(grid[-1]))
         self.up.span(low, high)
         with self.levels.hold_sync():
             self.levels.x, self.levels.y = grid, levels
         with self.shade.hold_sync():
             # the front end takes one colour a curve, and leaves curves without one unfilled
-            self.shade.fill_colors, self.shade.fill_opacities = [SHADE] * len(stretches), [0.18] * len(stretches)
+            self.shade.fill_colors, self.shade.fill_opacities = (
+                [SHADE] * len(stretches),
+                [0.18] * len(stretches),
+            )
             self.shade.x = np.array([[a, a, b, b] for a, b in stretches])
             self.shade.y = np.array([[low, high, high, low] for _ in stretches])
 
@@ -53,6 +54,12 @@ class _Panel:
             self.here.y = np.array([self.up.scale.min, self.up.scale.max])
         with self.points.hold_sync():
             self.points.x, self.points.y = np.full(len(heights), value), heights
+
+
+def _ends(levels: np.ndarray) -> tuple[float, float]:
+    if np.isnan(levels).all():
+        return 0.0, 1.0
+    return float(np.nanmin(levels)), float(np.nanmax(levels))
 
 
 class MassesChart(ipywidgets.VBox):

@@ -1,10 +1,10 @@
-"""Names of irreps and parameters as short Unicode text, for labels that no MathJax reaches."""
+"""Irreps, parameters and errors as short Unicode text, for labels that no MathJax reaches."""
 
 from __future__ import annotations
 
 from sympy.printing.pretty.pretty_symbology import pretty_symbol
 
-__all__ = ["irrep_face", "parameter_face"]
+__all__ = ["irrep_face", "parameter_face", "short_error"]
 
 _OVERLINE = "\N{COMBINING OVERLINE}"
 
@@ -32,4 +32,12 @@ def parameter_face(name: str) -> str:
     >>> parameter_face("beta")
     'β'
     """
-    return str(pretty_symbol(name))
+    # lambda is a keyword of Python, so that lam stands for it
+    return "λ" if name == "lam" else str(pretty_symbol(name))
+
+
+def short_error(error: float) -> str:
+    """One digit and a power of ten; an error of zero is just 0, an unknown one ∞."""
+    if error == 0:
+        return "0"
+    return f"{error:.0e}" if error < float("inf") else "∞"

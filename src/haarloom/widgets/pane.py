@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from contextlib import contextmanager
 from html import escape
+from threading import RLock
 from typing import Any
 
 import ipywidgets
@@ -15,14 +16,19 @@ from haarloom.widgets.dyes import selvedge
 from haarloom.widgets.fields import FaultLine
 from haarloom.widgets.head import PaneHead
 
-__all__ = ["Pane", "column"]
+__all__ = ["Pane"]
+
+_ONE_AT_A_TIME = RLock()
+"""Notebooks may deliver widget messages on a thread beside the one that runs cells (kernel subshells)."""
 
 
 class Pane(ipywidgets.VBox):
     """Base of the panes.
 
     A subclass names itself, fills the body, and says in ``_draw`` how to bring the screen up to
-    date. A pane that is not ``active`` (a closed station of a loom) waits with drawing until it is.
+    date. Where ``first_drawing`` is called, what is wrong with the input is raised; later drawings say
+    it in the fault line. A pane that is not ``active`` (a closed station of a loom)
+    waits with drawing until it is.
 
     Attributes
     ----------
@@ -44,27 +50,54 @@ class Pane(ipywidgets.VBox):
     fault = traitlets.Unicode()
     active = traitlets.Bool(True)
 
+    _line_is_placed = False
+
     def __init__(self, body: ipywidgets.Widget, **traits: Any) -> None:
         self._head = PaneHead(title=self.name, selvedge=selvedge(*self.dyes))
-        self._fault_line = FaultLine()
-        self._late = False
+        self._late, self._held = False, 0
         body.add_class("hl-body")
-        super().__init__([self._head, self._fault_line, body], **traits)
+        line = [] if self._line_is_placed else [self.fault_line()]
+        super().__init__([self._head, *line, body], **traits)
         for css in ("haarloom", "hl-pane"):
             self.add_class(css)
         traitlets.dlink((self, "code"), (self._head, "code"))
-        traitlets.dlink((self, "fault"), (self._fault_line, "message"))
         self.observe(self._catch_up, "active")
+
+    def fault_line(self) -> FaultLine:
+        """A line that shows ``fault``, for the place beside the controls.
+
+        A subclass that does not ask for it before it calls the base's constructor has it below the head.
+        """
+        line = FaultLine()
+        traitlets.dlink((self, "fault"), (line, "message"))
+        self._line_is_placed = True
+        return line
+
+    def first_drawing(self) -> None:
+        """Draw for the first time: what is wrong is raised, for there is no good result to keep."""
+        self._draw()
+        self.code = self._source()
 
     def refresh(self, *_: Any) -> None:
         """Draw now, or when the pane becomes active; bad input leaves the last good picture."""
-        if not self.active:
-            self._late = True
-            return
-        self._late = False
-        with self.excused():
-            self._draw()
-            self.code = self._source()
+        with _ONE_AT_A_TIME:
+            self._late = not self.active or self._held > 0
+            if self._late:
+                return
+            with self.excused():
+                self._draw()
+                self.code = self._source()
+
+    @contextmanager
+    def one_drawing(self) -> Iterator[None]:
+        """Change several traits and draw once, at the end."""
+        with _ONE_AT_A_TIME:
+            self._held += 1
+            try:
+                yield
+            finally:
+                self._held -= 1
+                self._catch_up()
 
     @contextmanager
     def excused(self) -> Iterator[None]:
@@ -72,7 +105,7 @@ class Pane(ipywidgets.VBox):
         try:
             yield
         except HaarloomError as problem:
-            self.fault = str(problem)
+            self.fault = f"{problem} What is shown is the last good result."
         else:
             self.fault = ""
 
@@ -84,6 +117,11 @@ class Pane(ipywidgets.VBox):
     @status.setter
     def status(self, text: str) -> None:
         self._head.status = text
+
+    @property
+    def summary(self) -> str:
+        """A few words for the station strip of a loom."""
+        return self.status
 
     def _draw(self) -> None:
         raise NotImplementedError
@@ -99,8 +137,8 @@ class Pane(ipywidgets.VBox):
         """Lines of the ``text/plain`` face under the title."""
         return ""
 
-    def _catch_up(self, _: Any) -> None:
-        if self.active and self._late:
+    def _catch_up(self, *_: Any) -> None:
+        if self._late:
             self.refresh()
 
     def __repr__(self) -> str:
@@ -119,8 +157,3 @@ class Pane(ipywidgets.VBox):
     def _repr_mimebundle_(self, **kwargs: Any) -> dict[str, Any]:
         bundle = dict(super()._repr_mimebundle_(**kwargs) or {})
         return bundle | {"text/plain": repr(self), "text/html": self._repr_html_()}
-
-
-def column(*children: ipywidgets.Widget) -> ipywidgets.VBox:
-    """Widgets one below the other, which may shrink to the width of the column."""
-    return ipywidgets.VBox(list(children)).add_class("hl-column")

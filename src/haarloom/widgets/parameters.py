@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from typing import Any, Protocol
 
 from sympy import Symbol
@@ -16,27 +16,34 @@ class Parametric(Protocol):
     """A model or a weight."""
 
     @property
-    def parameters(self) -> tuple[Symbol, ...]: ...
+    def parameters(self) -> tuple[Symbol, ...]:
+        """The symbols that need values."""
 
 
-COMMON: dict[str, tuple[float, float, float]] = {
+Span = tuple[float, float, float]
+"""Lowest, highest and starting value."""
+
+BY_NAME: dict[str, Span] = {
     "t": (0.1, 3.0, 1.0),
+    "beta": (0.5, 12.5, 3.0),
     "z": (0.0, 3.0, 0.3),
     "zbar": (0.0, 1.0, 0.0),
-    "beta": (0.0, 12.0, 3.0),
 }
-"""Lowest, highest and starting value for names in common use: strong to moderate coupling, and
-fugacities from an empty lattice past half filling at z = 1."""
+"""Names in common use: strong to moderate coupling; fugacities from an empty lattice past half filling."""
 
-OTHERWISE = (0.0, 1.0, 0.1)
+BY_DOMAIN: dict[str, Span] = {
+    "boson fugacity": (0.0, 0.95, 0.2),
+    "positive real": (0.1, 3.0, 1.0),
+    "nonnegative real": (0.0, 3.0, 1.0),
+}
+
+OTHERWISE: Span = (0.0, 1.0, 0.1)
 
 
 def ranges_of(owner: Parametric, given: Mapping[str, tuple[float, float]]) -> dict[str, tuple[float, float]]:
-    """Slider ranges by name; ``given`` ones first."""
-    return {
-        symbol.name: given.get(symbol.name, COMMON.get(symbol.name, OTHERWISE)[:2])
-        for symbol in owner.parameters
-    }
+    """Slider ranges by name; ``given`` ones first, else what suits the name and the domain."""
+    spans = _spans(owner)
+    return {name: given.get(name, span[:2]) for name, span in spans.items()}
 
 
 def checked_start(
@@ -49,15 +56,36 @@ def checked_start(
     ParameterError
         For a name that is no parameter, or a value that is no real number.
     """
-    names = [symbol.name for symbol in owner.parameters]
-    given = dict(given or {})
+    spans, given, kept = _spans(owner), dict(given or {}), dict(keep or {})
     for name in given:
-        if name not in names:
+        if name not in spans:
             raise ParameterError(
-                f"values name {name!r}, which is no parameter here: allowed are {', '.join(names) or 'none'}."
+                f"values name {name!r}, which is no parameter here: allowed are {', '.join(spans) or 'none'}."
             )
-    kept = dict(keep or {})
-    return {name: _real(name, given.get(name, kept.get(name, COMMON.get(name, OTHERWISE)[2]))) for name in names}
+    return {name: _real(name, given.get(name, kept.get(name, span[2]))) for name, span in spans.items()}
+
+
+def _spans(owner: Parametric) -> dict[str, Span]:
+    domains = dict(_domains(owner))
+    return {symbol.name: _span(symbol.name, domains.get(symbol.name, "")) for symbol in owner.parameters}
+
+
+def _span(name: str, domain: str) -> Span:
+    # a fugacity of bosons is called z as well, but must stay below 1
+    if domain == "boson fugacity":
+        return BY_DOMAIN[domain]
+    return BY_NAME.get(name, BY_DOMAIN.get(domain, OTHERWISE))
+
+
+def _domains(owner: Any) -> Iterator[tuple[str, str]]:
+    """Domains of those parameters that are a whole field of some weight."""
+    for part in (getattr(owner, "link", None), getattr(owner, "site", None), *getattr(owner, "sites", ())):
+        if part is not None:
+            yield from _domains(part)
+    for field in getattr(owner, "FIELDS", ()):
+        value = getattr(owner, field.name, None)
+        if isinstance(value, Symbol):
+            yield value.name, field.domain
 
 
 def _real(name: str, value: Any) -> float:

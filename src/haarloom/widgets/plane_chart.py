@@ -18,21 +18,21 @@ class PlaneChart:
         self._across = Ruler("Re m   [1/a]", ticks=4)
         self._up = Ruler("Im m   [1/a]", upright=True)
         scales = {"x": self._across.scale, "y": self._up.scale}
-        self._trails = bqplot.Lines(
-            x=[], y=[], scales=scales, colors=list(DYES), stroke_width=1.5
-        )
+        self._trails = bqplot.Lines(x=[], y=[], scales=scales, colors=list(DYES), stroke_width=1.5)
         self._points = bqplot.Scatter(
             x=[], y=[], scales=scales, colors=[INK], default_size=48, stroke_width=0
         )
-        self.figure = figure([self._trails, self._points], self._across, self._up, height=400)
+        self.figure = figure([self._trails, self._points], self._across.axis, self._up.axis, height=400)
 
     def draw(self, masses: np.ndarray) -> None:
         """Show the trails of a scan, masses of shape (levels, points)."""
-        self._across.span(*padded(min(0.0, float(masses.real.min())), float(masses.real.max())))
+        finite = np.isfinite(masses)
+        self._across.span(*padded(0.0, float(masses.real.max(where=finite, initial=0.0))))
         reach = float(np.abs(masses.imag).max()) or 0.5
         self._up.span(*padded(-reach, reach, share=0.1))
         with self._trails.hold_sync():
-            self._trails.x, self._trails.y = masses.real, masses.imag
+            self._trails.x = np.where(finite, masses.real, np.nan)
+            self._trails.y = np.where(finite, masses.imag, np.nan)
 
     def mark(self, masses: np.ndarray) -> None:
         """Show the current point, masses of shape (levels,)."""

@@ -14,10 +14,10 @@ from haarloom.exceptions import HaarloomError, ParameterError, SizeError
 from haarloom.numerics.branches import MassBranches, masses_along
 from haarloom.numerics.faces import spectrum_html
 from haarloom.widgets.copy_code import call, model_lines, number_text, values_text
-from haarloom.widgets.fields import Field, section
+from haarloom.widgets.fields import LABEL, Field, column, section
 from haarloom.widgets.masses_chart import MassesChart
-from haarloom.widgets.names import parameter_face
-from haarloom.widgets.pane import Pane, column
+from haarloom.widgets.names import parameter_face, short_error
+from haarloom.widgets.pane import Pane
 from haarloom.widgets.parameters import checked_start, ranges_of
 from haarloom.widgets.plane_chart import PlaneChart
 from haarloom.widgets.sliders import ValueSliders
@@ -100,7 +100,7 @@ class SpectrumPane(Pane):
         self.set_trait("model", model)
         self.set_trait("levels", levels)
         self._connect()
-        self.refresh()
+        self.first_drawing()
 
     def _build(
         self,
@@ -112,7 +112,7 @@ class SpectrumPane(Pane):
     ) -> None:
         self._sliders = ValueSliders(start, bounds)
         self._scan_choice = ipywidgets.Dropdown(
-            options=_choices(start), value=scan, description="scan over", style={"description_width": "88px"}
+            options=_choices(start), value=scan, description="scan over", style=LABEL
         )
         self._span_field = Field(
             "from … to", span, _read_span, show=_span_text, help="two numbers, e.g. 0 … 2"
@@ -130,6 +130,7 @@ class SpectrumPane(Pane):
         controls = column(
             section("point"),
             self._sliders,
+            self.fault_line(),
             section("scan"),
             self._scan_choice,
             self._span_field,
@@ -145,7 +146,8 @@ class SpectrumPane(Pane):
         traitlets.link((self._span_field, "value"), (self, "span"))
         traitlets.link((self._cutoff_field, "value"), (self, "cutoff"))
         self.observe(self._follow_model, "model")
-        self.observe(self.refresh, ["values", "scan", "span", "cutoff", "levels"])
+        self.observe(self._follow_scan, "scan")
+        self.observe(self.refresh, ["values", "span", "cutoff", "levels"])
 
     def _read_cutoff(self, text: str) -> int | None:
         word = text.strip().lower()
@@ -157,17 +159,24 @@ class SpectrumPane(Pane):
         if size > MOST_IRREPS:
             raise SizeError(
                 f"cutoff K = {word} means {size:,} irreps at each of {POINTS} points; a pane that follows "
-                f"sliders is limited to {MOST_IRREPS}. Take a smaller cutoff, or model.spectrum(cutoff={word}, …)."
+                f"sliders is limited to {MOST_IRREPS}. Take a smaller cutoff, or work with "
+                f"model.spectrum(cutoff={word}, …) in a cell."
             )
         return int(word)
 
     def _follow_model(self, _: Any) -> None:
         values = checked_start(self.model, None, keep=self.values)
-        self._sliders.rebuild(values, ranges_of(self.model, self._ranges))
         scan = self.scan if self.scan in values else _preferred_scan(values)
-        self._scan_choice.options = _choices(values)
-        self.scan = scan
-        self.refresh()
+        with self.one_drawing():
+            self._sliders.rebuild(values, ranges_of(self.model, self._ranges))
+            self._scan_choice.options = _choices(values)
+            self.scan = scan
+            self.refresh()
+
+    def _follow_scan(self, _: Any) -> None:
+        with self.one_drawing():
+            self.span = self._sliders.ranges.get(self.scan, self.span)
+            self.refresh()
 
     def _draw(self) -> None:
         started = perf_counter()
@@ -182,7 +191,7 @@ class SpectrumPane(Pane):
         if not self.scan or wanted == self._scanned:
             return
         try:
-            grid = np.linspace(*self.span, POINTS)
+            grid = np.linspace(self.span[0], self.span[1], POINTS)
             branches = masses_along(self.model, self.scan, grid, self.levels, cutoff, **fixed)
         except HaarloomError as problem:
             self._span_field.fault = str(problem)
@@ -206,16 +215,25 @@ class SpectrumPane(Pane):
             "masses in units of 1/a, the inverse spatial lattice spacing"
         )
 
+    def settings(self) -> dict[str, str | None]:
+        """Keywords that hold scan and truncation as source text; those of the scan on the screen."""
+        scan: dict[str, str | None] = {"scan": None, "span": None}
+        if self.branches is not None:
+            ends = (float(self.branches.grid[0]), float(self.branches.grid[-1]))
+            scan = {"scan": f'"{self.branches.parameter}"', "span": f"({', '.join(map(number_text, ends))})"}
+        return scan | {"cutoff": str(self.cutoff), "levels": str(self.levels)}
+
+    @property
+    def summary(self) -> str:
+        """The lowest mass."""
+        if not self.spectrum:
+            return ""
+        mass, error = self.spectrum.masses[0], self.spectrum.error[0]
+        imaginary = f" {'+' if mass.imag > 0 else '−'} {abs(mass.imag):.4f} i" if mass.imag else ""
+        return f"m₁ = {mass.real:.4f}{imaginary}, error ≤ {short_error(error)}"
+
     def _source(self) -> str:
-        pane = call(
-            "hl.SpectrumPane",
-            "model",
-            values="values",
-            scan=f'"{self.scan}"',
-            span=f"({', '.join(map(number_text, self.span))})",
-            cutoff=str(self.cutoff),
-            levels=str(self.levels),
-        )
+        pane = call("hl.SpectrumPane", "model", values="values", **self.settings())
         return "\n".join(
             [
                 *model_lines(self.model),
@@ -239,7 +257,7 @@ def _preferred_scan(values: Mapping[str, float]) -> str:
 
 
 def _choices(names: Mapping[str, float]) -> list[tuple[str, str]]:
-    return [(parameter_face(name), name) for name in names]
+    return [(parameter_face(name), name) for name in names] or [("no parameter", "")]
 
 
 def _span_text(span: tuple[float, float]) -> str:
@@ -260,7 +278,7 @@ def _read_span(text: str) -> tuple[float, float]:
 def _masses_table(spectrum: Spectrum) -> str:
     rows = "".join(
         f"<tr><td>m<sub>{level}</sub></td><td>{mass.real:.8f}</td><td>{_imaginary(mass)}</td>"
-        f'<td>{error:.0e}</td><td class="hl-left">{verdict}</td></tr>'
+        f'<td>{short_error(error)}</td><td class="hl-left">{verdict}</td></tr>'
         for level, (mass, error, verdict) in enumerate(
             zip(spectrum.masses, spectrum.error, spectrum.verdicts, strict=True), start=1
         )
@@ -284,11 +302,14 @@ def stretches_of_lowest(branches: MassBranches) -> tuple[tuple[float, float], ..
 
 def _scan_sentence(branches: MassBranches, stretches: Sequence[tuple[float, float]]) -> str:
     name = parameter_face(branches.parameter)
-    worst = f"errors along the scan ≤ {branches.error.max():.0e}"
+    worst = f"errors along the scan ≤ {short_error(branches.error.max())}"
     if not np.isfinite(branches.error).all():
-        worst = "the cutoff is too small for a bound on part of the scan"
+        worst = "on part of the scan the cutoff is too small for a bound on the error"
     if not stretches:
-        return f"The lowest mass is nowhere one of a complex pair; {worst}."
+        return (
+            f"At none of the {len(branches.grid)} points is the lowest mass one of a complex pair "
+            f"beyond its error; {worst}."
+        )
     parts = ", ".join(f"{a:.4g} ≤ {name} ≤ {b:.4g}" for a, b in stretches)
     step = branches.grid[1] - branches.grid[0]
     return f"Shaded: the lowest mass is one of a complex pair, {parts} (grid step {step:.2g}); {worst}."

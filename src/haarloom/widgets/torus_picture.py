@@ -6,10 +6,12 @@ from collections.abc import Callable, Mapping
 from typing import TYPE_CHECKING
 
 import bqplot
+import ipywidgets
 import numpy as np
 
-from haarloom.widgets.charts import INK, Ruler, figure, padded
+from haarloom.widgets.charts import INK, Ruler, figure, padded, round_ticks
 from haarloom.widgets.dyes import CLOTH, DYES, RAMP
+from haarloom.widgets.raster import png, tinted
 
 if TYPE_CHECKING:
     from haarloom.actions.protocols import SiteWeight
@@ -39,7 +41,7 @@ class MapPicture:
     caption = "The triangle holds each conjugacy class once; its corners are the centre: 1, ω, ω²."
 
     def __init__(self) -> None:
-        reach = 2 * np.pi * np.sqrt(2 / 3) * 1.05
+        reach = 2 * np.pi * np.sqrt(2 / 3) * 1.12
         axis = np.linspace(-reach, reach, SIDE)
         x, y = np.meshgrid(axis, axis)
         self._angles = np.stack([y / np.sqrt(6) + x / np.sqrt(2), y / np.sqrt(6) - x / np.sqrt(2)], axis=-1)
@@ -48,39 +50,53 @@ class MapPicture:
         up.span(-reach, reach)
         scales = {"x": across.scale, "y": up.scale}
         self._colours = bqplot.ColorScale(colors=list(CLOTH), min=0.0, max=1.0)
-        self._map = bqplot.HeatMap(
-            x=axis, y=axis, color=np.zeros((SIDE, SIDE)), scales=scales | {"color": self._colours}
-        )
-        corners = _chamber_corners()
-        outline = bqplot.Lines(
-            x=corners[:, 0], y=corners[:, 1], scales=scales, colors=["#111111"], close_path=True, stroke_width=1.5
-        )  # fmt: skip
-        names = bqplot.Label(
-            x=corners[:, 0], y=corners[:, 1], text=["1", "ω", "ω²"], scales=scales, colors=["#111111"],
-            default_size=15, font_weight="bold", x_offset=6, y_offset=-6,
-        )  # fmt: skip
-        bar = bqplot.ColorAxis(scale=self._colours, side="right", orientation="vertical", label="")
+        # the page redraws when the image widget is another one, not when its bytes change: two in turn
+        self._sheets = [
+            ipywidgets.Image(format="png", value=png(np.zeros((1, 1, 3), np.uint8))) for _ in range(2)
+        ]
+        edges = [-reach, reach]
+        self._map = bqplot.Image(image=self._sheets[0], x=edges, y=edges, scales=scales)
+        self._bar = bqplot.ColorAxis(scale=self._colours, side="right", label="")
         self.figure = figure(
-            [self._map, outline, names], across, up, height=400,
-            min_aspect_ratio=1.15, max_aspect_ratio=1.15,
+            [self._map, *_chamber_marks(scales)],
+            across.axis,
+            up.axis,
+            self._bar,
+            height=400,
+            # the two plotted axes have the same length when the margins are taken off
+            min_aspect_ratio=1.23,
+            max_aspect_ratio=1.23,
             fig_margin={"top": 10, "bottom": 46, "left": 64, "right": 84},
-        )  # fmt: skip
-        self.figure.axes = [*self.figure.axes, bar]
+        )
 
     def draw(self, site: SiteWeight, values: Mapping[str, float], quantity: str) -> None:
         """Show one quantity of W at the given values."""
         shown = QUANTITIES[quantity](site.density_at(self._angles, values))
-        low, high = float(shown.min()), float(shown.max())
         if quantity == "|W|":
-            self._paint(shown, CLOTH, 0.0, max(high, 1e-300))
+            self._paint(shown, CLOTH, 0.0, float(shown.max()) or 1.0)
         else:
-            reach = max(abs(low), abs(high)) or 1.0
+            reach = float(np.abs(shown).max()) or 1.0
             self._paint(shown, RAMP, -reach, reach)
 
     def _paint(self, shown: np.ndarray, colours: tuple[str, ...], low: float, high: float) -> None:
         with self._colours.hold_sync():
             self._colours.colors, self._colours.min, self._colours.max = list(colours), low, high
-        self._map.color = shown.astype(np.float32)
+        self._bar.tick_values = round_ticks(low, high, 5)
+        sheet = self._sheets[self._map.image is self._sheets[0]]
+        sheet.value = png(tinted(shown[::-1], colours, low, high))
+        self._map.image = sheet
+
+
+def _chamber_marks(scales: Mapping[str, bqplot.Scale]) -> list[bqplot.Mark]:
+    """The outlined chamber, with its corners named."""
+    x, y = _chamber_corners().T
+    edge = bqplot.Lines(x=x, y=y, scales=scales, colors=["#111111"], close_path=True, stroke_width=1.5)
+    discs = bqplot.Scatter(x=x, y=y, scales=scales, colors=["#ffffff"], stroke="#111111", default_size=330)
+    names = bqplot.Label(
+        x=x, y=y, text=["1", "ω", "ω²"], scales=scales, colors=["#111111"], align="middle",
+        default_size=12, font_weight="bold", y_offset=2,
+    )  # fmt: skip
+    return [edge, discs, names]
 
 
 def _chamber_corners() -> np.ndarray:
@@ -97,16 +113,14 @@ class LinePicture:
     def __init__(self, group: SU) -> None:
         self._theta = np.linspace(-np.pi, np.pi, 241)
         self._angles = np.repeat(self._theta[:, None], group.n - 1, axis=1)
-        last = "e^{−iθ}" if group.n == 2 else f"e^(−{group.n - 1}iθ)"
-        self.caption = f"W along P = diag(e^(iθ), …, {last}), a line through every element of the centre."
+        inside = "e^(iθ), e^(−iθ)" if group.n == 2 else f"e^(iθ), …, e^(iθ), e^(−{group.n - 1}iθ)"
+        self.caption = f"W along P = diag({inside}), a line through every element of the centre."
         across, self._up = Ruler("θ   [rad]"), Ruler("W", upright=True)
         across.span(-np.pi, np.pi)
         scales = {"x": across.scale, "y": self._up.scale}
         self._line = bqplot.Lines(x=self._theta, y=0 * self._theta, scales=scales, colors=[DYES[1]])
-        zero = bqplot.Lines(
-            x=[-np.pi, np.pi], y=[0.0, 0.0], scales=scales, colors=[INK], stroke_width=0.5
-        )
-        self.figure = figure([zero, self._line], across, self._up, height=320)
+        zero = bqplot.Lines(x=[-np.pi, np.pi], y=[0.0, 0.0], scales=scales, colors=[INK], stroke_width=0.5)
+        self.figure = figure([zero, self._line], across.axis, self._up.axis, height=320)
 
     def draw(self, site: SiteWeight, values: Mapping[str, float], quantity: str) -> None:
         """Show one quantity of W at the given values."""

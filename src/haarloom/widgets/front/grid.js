@@ -122,8 +122,9 @@ function legend(data, box) {
     node("span", {}, node("i", { class: `hl-swatch hl-knot hl-k${k}` }), `N-ality of r − s ≡ ${k} (mod ${data.order})`));
   const sizes = data.magnitudes?.filter((m) => m > 0) ?? [];
   const range = sizes.length && !numbered(data.n) ? `size: |T| on a log scale, ${shortNumber(Math.min(...sizes))} … ${shortNumber(Math.max(...sizes))}` : "";
+  const vanishing = data.magnitudes?.some((m, at) => data.pattern[at] && m === 0) ? "small ring: zero at these values only" : "";
   const negative = data.re?.some((x, at) => data.pattern[at] && x < 0) ? "open: negative" : "";
-  box.replaceChildren(...swatches, node("span", {}, "no knot: exactly zero"), node("span", {}, range), node("span", {}, negative));
+  box.replaceChildren(...swatches, node("span", {}, "no knot: exactly zero"), ...[vanishing, range, negative].filter(Boolean).map((words) => node("span", {}, words)));
 }
 
 export default {

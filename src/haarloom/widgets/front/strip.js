@@ -9,8 +9,8 @@ export default {
     el.append(strip);
 
     const toggle = (key) => {
-      const open = model.get("open");
-      model.set("open", open.includes(key) ? open.filter((k) => k !== key) : [...open, key]);
+      const open = model.get("opened");
+      model.set("opened", open.includes(key) ? open.filter((k) => k !== key) : [...open, key]);
       model.save_changes();
     };
     const buttonFor = ({ key, thread }) => {
@@ -32,7 +32,7 @@ export default {
         const button = strip.children[i];
         button.querySelector("b").textContent = title;
         button.querySelector("span").textContent = summary;
-        button.setAttribute("aria-expanded", String(model.get("open").includes(key)));
+        button.setAttribute("aria-expanded", String(model.get("opened").includes(key)));
       });
     };
     model.on("change", draw);

@@ -1,0 +1,140 @@
+"""Small pictures and tables for results in a notebook: plain SVG and HTML that follow the page's own colours."""
+
+from __future__ import annotations
+
+import base64
+import struct
+import zlib
+from collections.abc import Sequence
+from html import escape
+
+import numpy as np
+from numpy.typing import NDArray
+
+__all__ = ["heat_picture", "line_picture", "table_html"]
+
+_WIDTH, _HEIGHT, _LEFT, _BOTTOM, _TOP, _RIGHT = 420, 260, 64, 44, 14, 14
+_DASHES = ("none", "6 3", "2 3", "8 3 2 3")
+_BLUE, _RED = (42, 102, 184), (186, 44, 44)
+
+
+def table_html(head: Sequence[str], rows: Sequence[Sequence[str]], caption: str = "") -> str:
+    """An HTML table with every cell escaped."""
+    top = "".join(f"<th>{escape(cell)}</th>" for cell in head)
+    body = "".join("<tr>" + "".join(f"<td>{escape(cell)}</td>" for cell in row) + "</tr>" for row in rows)
+    title = f"<caption>{escape(caption)}</caption>" if caption else ""
+    return f"<table>{title}<tr>{top}</tr>{body}</table>"
+
+
+def line_picture(
+    x: NDArray[np.float64],
+    curves: Sequence[NDArray[np.float64]],
+    across: str,
+    up: str,
+    names: Sequence[str] = (),
+) -> str:
+    """Curves over one axis as SVG text, told apart by dashes; numbers that are not finite leave a gap."""
+    finite = np.concatenate([np.asarray(c, dtype=float)[np.isfinite(c)] for c in curves])
+    low, high = (float(finite.min()), float(finite.max())) if len(finite) else (0.0, 1.0)
+    span = (high - low) or abs(high) or 1.0
+    low, high = low - 0.04 * span, high + 0.04 * span
+    left, right = float(np.min(x)), float(np.max(x)) or 1.0
+    frame = _Frame(left, right if right > left else left + 1.0, low, high)
+    paths = "".join(_path(frame, x, curve, _DASHES[i % len(_DASHES)]) for i, curve in enumerate(curves))
+    legend = "".join(_legend(i, name) for i, name in enumerate(names))
+    return _svg(_WIDTH, _HEIGHT, f"{up} against {across}", frame.axes(across, up) + paths + legend)
+
+
+def heat_picture(
+    values: NDArray[np.float64], corners: tuple[float, float, float, float], across: str, up: str
+) -> str:
+    """A real function on a grid as an image in SVG text: blue where positive, red where negative, fainter towards zero.
+
+    Parameters
+    ----------
+    values : ndarray, shape (rows, columns)
+        nan where nothing is shown; row 0 is at the bottom.
+    corners : tuple
+        Left, right, bottom, top of the axes.
+    """
+    frame = _Frame(*corners)
+    strength = np.nan_to_num(values) / (float(np.nanmax(np.abs(values))) or 1.0)
+    pixels = np.zeros((*values.shape, 4), dtype=np.uint8)
+    pixels[..., :3] = np.where(strength[..., None] < 0, _RED, _BLUE)
+    pixels[..., 3] = np.round(255 * np.abs(strength))
+    image = base64.b64encode(_png(pixels[::-1])).decode("ascii")
+    body = (
+        f'<image x="{_LEFT}" y="{_TOP}" width="{frame.width}" height="{frame.height}" preserveAspectRatio="none" '
+        f'href="data:image/png;base64,{image}"/>'
+    )
+    return _svg(_WIDTH, _HEIGHT, f"map over {across} and {up}", body + frame.axes(across, up))
+
+
+def _png(pixels: NDArray[np.uint8]) -> bytes:
+    """Pixels (rows, columns, 4) of red, green, blue and opacity as a PNG file (ISO/IEC 15948)."""
+    rows = b"".join(b"\0" + row.tobytes() for row in pixels)
+    head = struct.pack(">IIBBBBB", pixels.shape[1], pixels.shape[0], 8, 6, 0, 0, 0)
+    chunks = ((b"IHDR", head), (b"IDAT", zlib.compress(rows, 9)), (b"IEND", b""))
+    return b"\x89PNG\r\n\x1a\n" + b"".join(
+        struct.pack(">I", len(data)) + name + data + struct.pack(">I", zlib.crc32(name + data))
+        for name, data in chunks
+    )
+
+
+class _Frame:
+    """The axes' rectangle and the map from numbers to places in it."""
+
+    width = _WIDTH - _LEFT - _RIGHT
+    height = _HEIGHT - _BOTTOM - _TOP
+
+    def __init__(self, left: float, right: float, low: float, high: float) -> None:
+        self.left, self.right, self.low, self.high = left, right, low, high
+
+    def place(self, x: float, y: float) -> tuple[float, float]:
+        across = (x - self.left) / (self.right - self.left)
+        up = (y - self.low) / (self.high - self.low)
+        return _LEFT + across * self.width, _TOP + (1 - up) * self.height
+
+    def axes(self, across: str, up: str) -> str:
+        marks = [
+            f'<rect x="{_LEFT}" y="{_TOP}" width="{self.width}" height="{self.height}" fill="none" stroke="currentColor"/>'
+        ]
+        for share in (0.0, 0.5, 1.0):
+            x, y = self.left + share * (self.right - self.left), self.low + share * (self.high - self.low)
+            px, py = self.place(x, y)
+            marks.append(_text(px, _HEIGHT - _BOTTOM + 16, f"{x:.3g}", "middle"))
+            marks.append(_text(_LEFT - 6, py + 4, f"{y:.3g}", "end"))
+        middle = _TOP + self.height / 2
+        marks.append(_text(_LEFT + self.width / 2, _HEIGHT - 8, across, "middle"))
+        marks.append(f'<g transform="rotate(-90 14 {middle})">{_text(14, middle, up, "middle")}</g>')
+        return "".join(marks)
+
+
+def _path(frame: _Frame, x: NDArray[np.float64], y: NDArray[np.float64], dashes: str) -> str:
+    steps, pen = [], "M"
+    for a, b in zip(np.asarray(x, dtype=float), np.asarray(y, dtype=float), strict=True):
+        if np.isfinite(b):
+            steps.append("{}{:.2f} {:.2f}".format(pen, *frame.place(a, b)))
+            pen = "L"
+        else:
+            pen = "M"
+    return f'<path d="{" ".join(steps)}" fill="none" stroke="currentColor" stroke-width="1.6" stroke-dasharray="{dashes}"/>'
+
+
+def _legend(index: int, name: str) -> str:
+    y = _TOP + 16 + 16 * index
+    line = f'<line x1="{_LEFT + 8}" x2="{_LEFT + 36}" y1="{y - 4}" y2="{y - 4}" stroke="currentColor" '
+    return (
+        line + f'stroke-dasharray="{_DASHES[index % len(_DASHES)]}"/>' + _text(_LEFT + 42, y, name, "start")
+    )
+
+
+def _text(x: float, y: float, text: str, anchor: str) -> str:
+    return f'<text x="{x:.1f}" y="{y:.1f}" font-size="11" fill="currentColor" text-anchor="{anchor}">{escape(text)}</text>'
+
+
+def _svg(width: int, height: int, title: str, body: str) -> str:
+    return (
+        f'<svg role="img" viewBox="0 0 {width} {height}" width="{width}" height="{height}" '
+        f'xmlns="http://www.w3.org/2000/svg"><title>{escape(title)}</title>{body}</svg>'
+    )

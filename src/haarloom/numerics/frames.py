@@ -1,0 +1,178 @@
+"""Warm starts: invariant subspaces interpolated from neighbouring points, every residual checked.
+
+Leading levels are grouped where |λ| drops clearly at every node of a patch. The invariant subspace of
+a group varies smoothly as long as the group stays apart from the others, through mergers inside it as
+well. It is computed densely at Chebyshev nodes, put into one gauge, and interpolated. At every point
+the pencil (Vᵀ ΦJ T V, Vᵀ ΦJ V) of a group gives its levels: because ΦJ maps right onto left vectors,
+the error of an eigenvalue is of second order in that of the subspace. A group of one or two levels
+needs no eigen-solver at all.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from haarloom.numerics.batch import truncate_batch
+from haarloom.numerics.group_levels import group_radii, pencil_levels
+from haarloom.numerics.interpolation import chebyshev_decay, chebyshev_nodes, lagrange_matrix
+from haarloom.numerics.ordering import spectral_order
+from haarloom.numerics.plane import NODES, Plane
+from haarloom.numerics.plane_images import PlanePart, plane_parts
+from haarloom.numerics.verdicts import verdicts_from
+
+__all__ = ["levels_from_frames"]
+
+EXTRA = 6
+"""Most levels beyond those wanted that the last group may take in to end at a gap."""
+
+GAP = 0.9
+"""Ratio of neighbouring |λ|, at every node, below which they belong to different groups."""
+
+SMOOTH = 1e-8
+"""Interpolation error of a subspace that is aimed at: its square is lost in rounding."""
+
+BEND = 1e-6
+"""Estimated error of an interpolated subspace from which on it is not evaluated."""
+
+
+@dataclass(frozen=True, eq=False)
+class _Frames:
+    """Subspaces of all groups at the nodes.
+
+    Attributes
+    ----------
+    nodes
+        Along both axes.
+    vectors
+        Shape (first nodes, second nodes, m, n): one row for each vector.
+    groups
+        Slices of the m vectors.
+    rest
+        Largest ratio of the first |λ| left out to the last taken in.
+    """
+
+    nodes: tuple[NDArray[np.float64], NDArray[np.float64]]
+    vectors: NDArray[Any]
+    groups: tuple[slice, ...]
+    rest: float
+
+
+def levels_from_frames(
+    plane: Plane,
+) -> tuple[NDArray[np.complex128], NDArray[np.float64], NDArray[np.str_]] | int | None:
+    """Values, radii and verdicts at every point.
+
+    Where the subspaces bend too much to be interpolated, the axis across which to halve the plane;
+    None where levels do not group or T is not mirrored.
+    """
+    counts = [_node_count(plane, axis) for axis in (0, 1)]
+    for axis, count in enumerate(counts):
+        if count is None:
+            return axis
+    frames = _frames(plane, (counts[0] or 1, counts[1] or 1))
+    if frames is None:
+        return None
+    rows, columns = plane.shape
+    weights = [lagrange_matrix(nodes, axis) for nodes, axis in zip(frames.nodes, plane.axes, strict=True)]
+    values = np.empty((rows * columns, plane.levels), dtype=complex)
+    radius = np.empty((rows * columns, plane.levels))
+    verdicts = np.empty((rows * columns, plane.levels - 1), dtype="U12")
+    for part in plane_parts(plane, frames.vectors, (weights[0], weights[1])):
+        found = _solved(plane, frames, part)
+        values[part.points], radius[part.points], verdicts[part.points] = found
+    shape = (rows, columns, -1)
+    return values.reshape(shape), radius.reshape(shape), verdicts.reshape(rows, columns, plane.levels - 1)
+
+
+def _solved(
+    plane: Plane, frames: _Frames, part: PlanePart
+) -> tuple[NDArray[Any], NDArray[np.float64], NDArray[np.str_]]:
+    groups = [
+        pencil_levels(part.vectors[:, group], part.images[:, group], part.beyond[:, group], part.dual)
+        for group in frames.groups
+    ]
+    levels = np.concatenate([group.values for group in groups], axis=1)
+    radii = group_radii(groups, part.margins, frames.rest * np.abs(levels[:, -1]))
+    order = spectral_order(levels)
+    levels, radii = (np.take_along_axis(array, order, axis=1) for array in (levels, radii))
+    leading, radius = levels[:, : plane.levels], radii[:, : plane.levels]
+    return leading, radius, verdicts_from(leading, radius, levels, part.real, part.hermitian)
+
+
+def _node_count(plane: Plane, axis: int) -> int | None:
+    """Nodes needed along an axis, from the middle line of the plane; None where too many are."""
+    line = plane.axes[axis]
+    if len(line) <= 3:
+        return len(line)
+    most = min(NODES, len(line))
+    middle = plane.axes[1 - axis][len(plane.axes[1 - axis]) // 2 :][:1]
+    axes = (line, middle) if axis == 0 else (middle, line)
+    frames = _frames(replace(plane, axes=axes), (most, 1) if axis == 0 else (1, most))
+    if frames is None:
+        return None
+    decay = chebyshev_decay(frames.vectors if axis == 0 else frames.vectors[0])
+    small = np.flatnonzero(decay < SMOOTH)
+    if small.size:
+        return int(max(small[0], 3))
+    return most if most == len(line) or decay[-1] < BEND else None
+
+
+def _frames(plane: Plane, counts: tuple[int, int]) -> _Frames | None:
+    nodes = tuple(
+        chebyshev_nodes(axis.min(), axis.max(), count) if len(axis) > 1 else axis
+        for axis, count in zip(plane.axes, counts, strict=True)
+    )
+    first, second = (grid.reshape(-1) for grid in np.meshgrid(*nodes, indexing="ij"))
+    batch = truncate_batch(plane.model, plane.cutoff, plane.values(first, second))
+    if not batch.mirrored:
+        return None
+    values, right, _ = batch.solved(left=False)
+    groups, rest = _groups(np.abs(values), plane.levels)
+    if not groups:
+        return None
+    rows = [_in_gauge(right[:, :, group], batch.real) for group in groups]
+    if any(row is None for row in rows):
+        return None
+    vectors = np.concatenate([row for row in rows if row is not None], axis=1)
+    vectors = np.ascontiguousarray(vectors).reshape(len(nodes[0]), len(nodes[1]), *vectors.shape[1:])
+    return _Frames((nodes[0], nodes[1]), vectors, groups, rest)
+
+
+def _groups(sizes: NDArray[np.float64], levels: int) -> tuple[tuple[slice, ...], float]:
+    """Slices of levels separated by gaps at every node, up to the first gap at or after ``levels``."""
+    most = min(levels + EXTRA, sizes.shape[1] - 1)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        ratios = np.nan_to_num(sizes[:, 1 : most + 1] / sizes[:, :most], nan=1.0).max(axis=0)
+    ends = [place + 1 for place in range(most) if ratios[place] < GAP]
+    last = next((end for end in ends if end >= levels), None)
+    if last is None:
+        return (), np.inf
+    bounds = [0, *(end for end in ends if end <= last)]
+    return tuple(slice(a, b) for a, b in _pairs(bounds)), float(ratios[last - 1])
+
+
+def _pairs(bounds: list[int]) -> Iterator[tuple[int, int]]:
+    return zip(bounds[:-1], bounds[1:], strict=True)
+
+
+def _in_gauge(right: NDArray[Any], real: bool) -> NDArray[Any] | None:
+    """Subspace bases with Qᴴ V = 1 for one Q, as rows: shape (nodes, s, n); None where that is ill-conditioned."""
+    gauge = _orthonormal(right[len(right) // 2], real)
+    overlap = gauge.conj().T @ right
+    if not np.isfinite(overlap).all() or np.linalg.cond(overlap).max() > 1e9:
+        return None
+    frames = right @ np.linalg.inv(overlap)
+    return np.swapaxes(frames.real if real else frames, 1, 2)
+
+
+def _orthonormal(vectors: NDArray[Any], real: bool) -> NDArray[Any]:
+    """Orthonormal basis of a span of eigenvectors, real where T is."""
+    count = vectors.shape[1]
+    if real and np.iscomplexobj(vectors):
+        vectors = np.concatenate([vectors.real, vectors.imag], axis=1)
+    return np.linalg.svd(vectors, full_matrices=False)[0][:, :count]

@@ -1,0 +1,166 @@
+"""One chunk of a scan, solved in one process."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from haarloom.exceptions import HaarloomError
+from haarloom.numerics.batch import batch_errors, complete_levels, truncate_batch
+from haarloom.numerics.bounds import mass_errors
+from haarloom.numerics.cutoff import closing_cutoff
+from haarloom.numerics.ordering import masses_from
+from haarloom.numerics.plane import Plane, PlaneLevels, dense_points, solve_plane
+from haarloom.numerics.scan_grid import Chunk, ScanGrid
+from haarloom.numerics.spectrum import spectrum
+from haarloom.numerics.threads import single_threaded
+from haarloom.numerics.verdicts import UNDECIDED, VERDICTS
+
+__all__ = ["ChunkResult", "solve_chunk"]
+
+LARGEST_PLANE = 250
+"""Most irreps in the basis of a plane; beyond, every point is solved by itself."""
+
+
+@dataclass(frozen=True, eq=False)
+class ChunkResult:
+    """What a worker sends back: arrays of shape (rows, columns, …).
+
+    Attributes
+    ----------
+    masses, error, verdicts
+        Shape (R, C, L − 1); verdicts as positions in ``VERDICTS``.
+    ground, cutoff
+        λ_0 and K, shape (R, C).
+    note
+        Why some points have no result; empty where all have.
+    """
+
+    chunk: Chunk
+    masses: NDArray[np.complex128]
+    error: NDArray[np.float64]
+    verdicts: NDArray[np.int8]
+    ground: NDArray[np.complex128]
+    cutoff: NDArray[np.int32]
+    note: str = ""
+
+
+@single_threaded
+def solve_chunk(grid: ScanGrid, chunk: Chunk) -> ChunkResult:
+    """Masses at all points of a chunk; points whose bound does not close come back without numbers."""
+    plane = _plane(grid, chunk)
+    try:
+        cutoff = _cutoff(plane)
+        if grid.model.group.count_irreps(cutoff) > LARGEST_PLANE:
+            return _one_by_one(grid, chunk, plane)
+        plane = replace(plane, cutoff=cutoff)
+        found = solve_plane(plane)
+    except HaarloomError:
+        return _one_by_one(grid, chunk, plane)
+    return _packed(chunk, found, _raised(plane, found))
+
+
+def _plane(grid: ScanGrid, chunk: Chunk) -> Plane:
+    rows, columns = grid.plane
+    rest = iter(chunk.place)
+    others = {
+        name: grid.axes[axis][next(rest)]
+        for axis, name in enumerate(grid.names)
+        if axis not in (rows, columns)
+    }
+    fixed = {**grid.fixed, **others}
+    if rows is None:
+        # a line is a plane with one row: some fixed parameter, or a name that no weight asks for
+        name = next(iter(fixed), "")
+        first = np.array([float(np.real(fixed.get(name, 0.0)))])
+        complex_row = name and np.iscomplexobj(np.asarray(fixed[name]))
+        row = "" if complex_row else name
+        fixed = fixed if complex_row else {key: value for key, value in fixed.items() if key != row}
+    else:
+        row, first = grid.names[rows], grid.axes[rows][chunk.start : chunk.stop]
+    names = (row, grid.names[columns])
+    return Plane(grid.model, 0, names, (first, grid.axes[columns]), fixed, grid.levels, grid.tolerance)
+
+
+def _cutoff(plane: Plane) -> int:
+    """Smallest K whose truncation error is a quarter of the tolerance at nine points of the plane."""
+    rows, columns = (np.unique(axis[[0, len(axis) // 2, -1]]) for axis in plane.axes)
+    first, second = (grid.reshape(-1) for grid in np.meshgrid(rows, columns, indexing="ij"))
+    values = plane.values(first, second)
+    corners = [{name: array[min(i, len(array) - 1)] for name, array in values.items()} for i in range(len(first))]
+    cutoff = min(closing_cutoff(plane.model, plane.levels, corner) for corner in corners)
+    while plane.model.group.count_irreps(cutoff) <= LARGEST_PLANE:
+        batch = truncate_batch(plane.model, cutoff, values)
+        levels, right, left = batch.solved()
+        quiet = replace(batch, noise=0.0 * batch.noise)
+        radius = batch_errors(quiet, complete_levels(batch, levels, right, left), plane.levels)
+        if replace(plane, tolerance=plane.tolerance / 4).accepts(levels[:, : plane.levels], radius).all():
+            return cutoff
+        cutoff += 1
+    return cutoff
+
+
+def _raised(plane: Plane, found: PlaneLevels) -> NDArray[np.int32]:
+    """Solve points that miss the tolerance again on larger bases; the cutoff of every point."""
+    used = np.full(found.radius.shape[:2], plane.cutoff, dtype=np.int32)
+    for higher in (plane.cutoff + 1, plane.cutoff + 3):
+        places = np.nonzero(~plane.accepts(found.values, found.radius))
+        if not len(places[0]):
+            break
+        first, second = (axis[place] for axis, place in zip(plane.axes, places, strict=True))
+        values, radius, verdicts = dense_points(replace(plane, cutoff=higher), first, second)
+        better = radius.max(axis=1) < found.radius[places].max(axis=1)
+        chosen = tuple(place[better] for place in places)
+        found.values[chosen], found.radius[chosen] = values[better], radius[better]
+        found.verdicts[chosen], used[chosen] = verdicts[better], higher
+    return used
+
+
+def _packed(chunk: Chunk, found: PlaneLevels, cutoff: NDArray[np.int32]) -> ChunkResult:
+    codes = np.searchsorted(np.sort(VERDICTS), found.verdicts)
+    return ChunkResult(
+        chunk,
+        masses_from(found.values),
+        mass_errors(found.values, found.radius),
+        np.argsort(VERDICTS)[codes].astype(np.int8),
+        found.values[:, :, 0],
+        cutoff,
+    )
+
+
+def _one_by_one(grid: ScanGrid, chunk: Chunk, plane: Plane) -> ChunkResult:
+    """Every point for itself: large bases, and chunks in which some point fails."""
+    rows, columns = plane.shape
+    shape = (rows, columns, grid.levels - 1)
+    result = ChunkResult(
+        chunk,
+        np.full(shape, np.nan + 0j),
+        np.full(shape, np.inf),
+        np.full(shape, VERDICTS.index(UNDECIDED), dtype=np.int8),
+        np.full(shape[:2], np.nan + 0j),
+        np.full(shape[:2], -1, dtype=np.int32),
+    )
+    note = ""
+    for row, first in enumerate(plane.axes[0]):
+        for column, second in enumerate(plane.axes[1]):
+            point = {**plane.fixed, **_named(plane, first, second)}
+            try:
+                found = spectrum(grid.model, levels=grid.levels, **point)
+            except HaarloomError as problem:
+                note = note or str(problem)
+                continue
+            result.masses[row, column] = found.masses
+            result.error[row, column] = found.error
+            result.verdicts[row, column] = [VERDICTS.index(word) for word in found.verdicts]
+            result.ground[row, column] = found.eigenvalues[0]
+            result.cutoff[row, column] = found.cutoff
+    return replace(result, note=note)
+
+
+def _named(plane: Plane, first: float, second: float) -> dict[str, Any]:
+    named = dict(zip(plane.names, (float(first), float(second)), strict=True))
+    named.pop("", None)
+    return named
