@@ -5,6 +5,8 @@ from __future__ import annotations
 import pytest
 import sympy
 
+from haarloom.algebra.expressions import class_function_from
+from haarloom.algebra.group import SU
 from haarloom.documents.class_expressions import parse_class_expression
 from haarloom.exceptions import ExpressionError
 
@@ -30,14 +32,29 @@ tr, chi = sympy.Function("tr"), sympy.Function("chi")
         ("L*/2 - 1", M / 2 - 1),
         ("L* - 2", M - 2),
         ("exp(h*(L + L*))", sympy.exp(h * (L + M))),
-        ("conj(L)*conj(L*)", L * M),
-        ("conj(I*chi(2, 0, 1))", -sympy.I * chi(1, 0, 2)),
-        ("conj(tr(P, 2))", tr(P, -2)),
+        ("conj(L)", sympy.conjugate(L)),
+        ("abs(L)^2 + re(L)", sympy.Abs(L) ** 2 + sympy.re(L)),
         ("tr(P, 3) - chi(2, 0)/2", tr(P, 3) - chi(2, 0) / 2),
     ],
 )
 def test_value(text: str, value: sympy.Expr) -> None:
     assert parse_class_expression(text) == value
+
+
+@pytest.mark.parametrize(
+    ("text", "same"),
+    [
+        ("conj(L)*conj(L*)", "L*L*"),
+        ("conj(I*chi(2, 0))", "-I*chi(0, 2)"),
+        ("conj(tr(P, 2))", "tr(P, -2)"),
+        ("abs(L)^2 - 1", "chi(1, 1)"),
+        ("tr(P, 2)", "L^2 - 2*L*"),
+    ],
+)
+def test_algebra_understands_what_was_read(text: str, same: str) -> None:
+    G = SU(3)
+    read, other = (class_function_from(parse_class_expression(words), G) for words in (text, same))
+    assert read == other
 
 
 @pytest.mark.parametrize(

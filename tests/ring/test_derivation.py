@@ -116,3 +116,26 @@ def test_faces_hold_the_statements():
     zero = ember().transfer_matrix(cutoff=2).derivation("8", "1")
     assert r"N-ality }0\text{)}" in zero.latex()
     assert zero.element == 0
+
+
+def mixing() -> hl.RingModel:
+    from haarloom.actions.exponential_coupling import exponential_coupling
+
+    return hl.RingModel(exponential_coupling(hl.SU(3), "lam"), hl.static_fermions(hl.SU(3), "z"))
+
+
+def test_a_link_that_mixes_irreps_replays_on_two_tori():
+    derivation = mixing().transfer_matrix(cutoff=2).derivation("3", "1")
+    assert len(derivation.steps) == 5
+    assert derivation.element == mixing().transfer_matrix(cutoff=2)["3", "1"]
+    assert derivation.verify().passed, derivation.verify()
+
+
+def test_a_corrupted_kernel_element_fails():
+    derivation = mixing().transfer_matrix(cutoff=1).derivation("1", "1")
+    for place, number in ((3, 0), (4, 0)):
+        step = derivation.steps[place]
+        wrong = replace(step.claims[number], value=step.claims[number].value + sympy.Rational(1, 10**6))
+        claims = (*step.claims[:number], wrong, *step.claims[number + 1 :])
+        steps = (*derivation.steps[:place], replace(step, claims=claims), *derivation.steps[place + 1 :])
+        assert not replace(derivation, steps=steps).verify().passed

@@ -109,3 +109,19 @@ def test_bad_input_is_named(ember, call, error, words):
     assert issubclass(error, HaarloomError)
     with pytest.raises(error, match=words):
         call(ember)
+
+
+def test_a_link_that_mixes_irreps_gives_the_eigenvalues_of_the_symmetric_form():
+    from haarloom.actions.exponential_coupling import exponential_coupling
+    from haarloom.numerics.compile import compile_transfer
+
+    model = hl.RingModel(exponential_coupling(hl.SU(3), "lam"), hl.static_fermions(hl.SU(3), "z"))
+    T = model.transfer_matrix(cutoff=2)
+    values = {"lam": 0.1, "z": 0.3}
+    exact = np.array(
+        T.matrix.subs({"lam": sympy.Rational(1, 10), "z": sympy.Rational(3, 10)}).evalf(), dtype=float
+    )
+    assert np.allclose(T.numeric(**values), exact, rtol=1e-12, atol=1e-14)
+    symmetric = compile_transfer(model, 2)(**values)
+    order = np.sort_complex
+    assert np.allclose(order(np.linalg.eigvals(symmetric)), order(np.linalg.eigvals(exact)), atol=1e-12)

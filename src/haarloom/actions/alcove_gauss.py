@@ -1,8 +1,9 @@
 """Gauss quadrature over one alcove of eigenphases, for class functions with creases on its walls.
 
-The alcove θ_1 ≥ … ≥ θ_N ≥ θ_1 − 2π, Σ θ = 0, is a simplex that holds every conjugacy class once; its corners are the
-elements of the centre. A function of the geodesic distance is smooth inside and creased on its images' walls, so
-a product Gauss rule on the collapsed simplex converges exponentially where a periodic grid does not.
+The alcove θ_1 ≥ … ≥ θ_N ≥ θ_1 − 2π, Σ θ = 0, is a simplex that holds every conjugacy class once; its
+corners are the elements of the centre. A function of the geodesic distance is smooth inside and creased on
+its images' walls, so a product Gauss rule on the collapsed simplex converges exponentially where a periodic
+grid does not.
 """
 
 from __future__ import annotations
@@ -75,7 +76,8 @@ def _simplex(dimension: int, order: int) -> tuple[Floats, Floats]:
 
     nodes, weights = np.ones((1, 1)), np.ones(1)
     for step in range(dimension):
-        # splitting the last coordinate s into s·u and s·(1 − u) has the Jacobian (1 − u)^(dimension − 1 − step)
+        # splitting the last coordinate s into s·u and s·(1 − u) has the Jacobian (1 − u)^(dimension − 1 −
+        # step)
         u, factor = roots_jacobi(order, dimension - 1 - step, 0)
         u = (u + 1) / 2
         rest = nodes[:, None, -1:] * np.stack([u, 1 - u], axis=-1)[None]

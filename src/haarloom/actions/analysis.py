@@ -1,4 +1,4 @@
-"""Analysis of weights: what kind of transfer matrix they make, in words, with how each statement was found."""
+"""What kind of transfer matrix a weight makes, in words, and how each statement was found."""
 
 from __future__ import annotations
 
@@ -60,7 +60,8 @@ class Statement:
 class WeightAnalysis:
     """Statements about one weight or one pair, at one point of parameter space.
 
-    ``analysis["positive"]`` is the statement of that name; in a notebook the analysis shows a table and the picture.
+    ``analysis["positive"]`` is the statement of that name; in a notebook the analysis shows a table and the
+    picture.
     """
 
     title: str
@@ -106,8 +107,8 @@ def analyse_site(site: Site, **values: complex) -> WeightAnalysis:
 
     Notes
     -----
-    W is real if w_c̄ = w_c*, CK-symmetric (T real in the character basis) if every w_c is real, charge-symmetric if
-    w_c̄ = w_c, and makes T non-negative if every w_c is.
+    W is real if w_c̄ = w_c*, CK-symmetric (T real in the character basis) if every w_c is real,
+    charge-symmetric if w_c̄ = w_c, and makes T non-negative if every w_c is.
     """
     point = _point(site, values)
     irreps = site.support() if site.finite else site.group.irreps(_CUTOFF[site.group.n])
@@ -127,7 +128,8 @@ def analyse_site(site: Site, **values: complex) -> WeightAnalysis:
 
 
 def analyse_link(link: Link, **values: complex) -> WeightAnalysis:
-    """What a link weight is: real, non-negative, decreasing, Hermitian, with which string tensions and series.
+    """What a link weight is: real, non-negative, decreasing, Hermitian, with which string tensions and
+    series.
 
     Parameters
     ----------
@@ -152,7 +154,7 @@ def analyse_link(link: Link, **values: complex) -> WeightAnalysis:
 
 
 def analyse_transfer(link: Link, site: Site, **values: complex) -> WeightAnalysis:
-    """Whether T = K^{1/2} W K^{1/2} comes out real, non-negative and Hermitian, and which N-alities it joins."""
+    """Whether T comes out real, non-negative and Hermitian, and which N-alities it joins."""
     own = analyse_link(link, **{n: v for n, v in values.items() if n in _names(link)})
     matter = analyse_site(site, **{n: v for n, v in values.items() if n in _names(site)})
     positive = own["positive kernel"].holds
@@ -160,15 +162,16 @@ def analyse_transfer(link: Link, site: Site, **values: complex) -> WeightAnalysi
     hermitian = bool(positive and matter["real"].holds)
     nonnegative = bool(positive and link.diagonal and matter["non-negative coefficients"].holds)
     statements = (
-        Statement("T real", real, "K has a real square root and every w_c is real." if real else
-                  "K has no real square root, or some w_c is complex.", "measured"),
-        Statement("T Hermitian", hermitian, "K is positive and W real, so the spectrum is real." if hermitian else
-                  "W is not real, or K not positive; eigenvalues may come in complex pairs.", "measured"),
-        Statement("T non-negative", nonnegative, "All k_r and w_c are ≥ 0 (premise of Perron and Frobenius)."
-                  if nonnegative else "Some k_r or w_c is negative, complex, or K is not diagonal.", "measured"),
+        _transfer_statement("T real", real, "K has a real square root and every w_c is real."),
+        _transfer_statement("T Hermitian", hermitian, "K is positive and W real: the spectrum is real."),
+        _transfer_statement("T non-negative", nonnegative, "All k_r and w_c are ≥ 0 (Perron and Frobenius)."),
         matter["N-alities"],
-    )  # fmt: skip
+    )
     return WeightAnalysis(f"T from {link.kind} and {site.kind}", _numbers(values), statements)
+
+
+def _transfer_statement(name: str, holds: bool, premise: str) -> Statement:
+    return Statement(name, holds, premise if holds else f"Fails: {premise}", "measured")
 
 
 @dataclass(frozen=True, eq=False)
@@ -300,9 +303,9 @@ def _particle_hole(site: Site) -> Statement:
     if not all(isinstance(factor, StaticFermions) for factor in factors):
         return Statement("particle–hole", None, "Stated for static fermions alone.", "not known")
     words = []
-    for fermions in factors:
-        power = fermions.copies * fermions.irrep.dimension  # type: ignore[union-attr]
-        if fermions.zbar == 0:  # type: ignore[union-attr]
+    for fermions in (factor for factor in factors if isinstance(factor, StaticFermions)):
+        power = fermions.copies * fermions.irrep.dimension
+        if fermions.zbar == 0:
             words.append(f"W at z equals z^{power} times W at 1/z with P → P†")
         else:
             words.append(f"W at (z, z̄) equals (z z̄)^{power} times W at (1/z̄, 1/z)")
@@ -344,7 +347,9 @@ def _kernel_positive(link: Link, k: NDArray[Any], error: NDArray[np.float64]) ->
 
 def _kernel_mixing(irreps: Sequence[Irrep], k: NDArray[Any], error: NDArray[np.float64]) -> Statement:
     rows, columns = np.nonzero(np.abs(k) > error + _ROUNDING * np.abs(k).max())
-    mixed = any(irreps[i].nality != irreps[j].nality for i, j in zip(rows, columns, strict=True))
+    mixed = any(
+        irreps[i].nality != irreps[j].nality for i, j in zip(rows.tolist(), columns.tolist(), strict=True)
+    )
     diagonal = bool(np.all(rows == columns))
     words = "Diagonal in the irreps." if diagonal else (
         "Mixes irreps of different N-ality." if mixed else "Mixes irreps of the same N-ality only."

@@ -1,8 +1,8 @@
 """Bases that spare a weight class most of its protocol.
 
 A link weight of your own: derive a frozen dataclass from `Link`, with `group` and parameters as fields,
-and write `coefficient`. A site weight: derive from `Site` and write `class_function`, or, where W is no finite
-combination of characters, from `haarloom.actions.torus_site.TorusSite` and write `density_at`.
+and write `coefficient`. A site weight: derive from `Site` and write `class_function`, or, where W is no
+finite combination of characters, from `haarloom.actions.torus_site.TorusSite` and write `density_at`.
 """
 
 from __future__ import annotations
@@ -106,7 +106,8 @@ class Link(_Weight):
         return k, ROUNDING * np.abs(k)
 
     def largest_outside(self, cutoff: int, values: Values) -> NDArray[Any]:
-        """Largest |k_r| on the next N shells beyond the cutoff: an *estimate* for k_r that fall with the shell.
+        """Largest |k_r| on the next N shells beyond the cutoff: an *estimate* for k_r that fall with the
+        shell.
 
         Fewer shells, but at least one, are scanned where N would hold more than a few thousand irreps.
         """
@@ -207,7 +208,8 @@ class Site(_Weight):
         """The exact class function."""
         raise ClassFunctionError(
             f"The site weight '{self.kind}' is not a finite combination of characters; "
-            "ask for single coefficients with .coefficient(irrep), or for numbers with .coefficients_at(irreps, values)."
+            "ask for single coefficients with .coefficient(irrep), or for numbers with "
+            ".coefficients_at(irreps, values)."
         )
 
     def coefficient(self, irrep: Irrep) -> Expr:
@@ -219,7 +221,7 @@ class Site(_Weight):
         return tuple(self.class_function())
 
     def coefficients_at(self, irreps: Sequence[Irrep], values: Values) -> tuple[NDArray[Any], NDArray[Any]]:
-        """w_c from the exact expressions; the error is a rounding allowance relative to the largest |w_c| d_c."""
+        """w_c from the exact expressions, with a rounding allowance of `ROUNDING`·|w_c|."""
         support = set(self.support())
         present = [place for place, irrep in enumerate(irreps) if irrep in support]
         numbers = stacked(evaluate([self.coefficient(irreps[place]) for place in present], values))

@@ -39,8 +39,8 @@ def bilinear_coupling(
     ----------
     group : SU
     couplings : mapping, or text
-        From a pair of irreps to λ_rs, ``{("3", "3"): "lam"}``; or text ``"(3, 3): lam, (3, 6bar): mu"``. Pairs that are not
-        listed have λ_rs = 0, the pair of trivial irreps included.
+        From a pair of irreps to λ_rs, ``{("3", "3"): "lam"}``; or text ``"(3, 3): lam, (3, 6bar): mu"``.
+        Pairs that are not listed have λ_rs = 0, the pair of trivial irreps included.
 
     Raises
     ------
@@ -79,7 +79,8 @@ def _table_of_text(text: str) -> dict[str, str]:
         key, colon, value = entry.rpartition(":")
         if not colon or key.strip() in table:
             raise ParameterError(
-                f"couplings: {entry.strip()!r} is no new entry; write (irrep, irrep): value, separated by commas."
+                f"couplings: {entry.strip()!r} is no new entry; write (irrep, irrep): value, separated by "
+                f"commas."
             )
         table[key.strip()] = value.strip()
     return table

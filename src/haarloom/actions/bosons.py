@@ -48,8 +48,8 @@ def static_bosons(
     irrep : Irrep, name or labels
         R, the fundamental unless said otherwise; the antiparticles are in its conjugate.
     **physical
-        Instead of z and z̄: ``mass``, ``mu``, ``temperature``; or ``kappa``, ``n_t``, ``mu`` for heavy Wilson quarks
-        at leading order in κ (see `haarloom.actions.fugacities`).
+        Instead of z and z̄: ``mass``, ``mu``, ``temperature``; or ``kappa``, ``n_t``, ``mu`` for heavy
+        Wilson quarks at leading order in κ (see `haarloom.actions.fugacities`).
 
     Raises
     ------
@@ -95,7 +95,7 @@ class StaticBosons(TorusSite):
         return (forward, backward) if self.zbar != 0 else (forward,)
 
     def coefficient(self, irrep: Irrep) -> Expr:
-        """Exact w_c: a rational function of z for particles alone in the fundamental, else a named coefficient."""
+        """Exact w_c: rational in z for particles alone in the fundamental, else a named coefficient."""
         if self.factors is None or self.zbar != 0:
             return super().coefficient(irrep)
         rows = irrep.partition if self.irrep == self.group.fundamental else irrep.conjugate.partition
@@ -118,9 +118,10 @@ class StaticBosons(TorusSite):
     def tail_bound(self, cutoff: int, values: Values) -> NDArray[Any]:
         """Σ |w_c| d_c beyond the cutoff: proven, by Cauchy's estimate.
 
-        An occupation by k particles and l antiparticles reaches labels that sum to at most (k + l) s, s that of R, and
-        Σ |w_c| d_c over k + l = m is at most the coefficient of y^m in (1 − y|z|)^{−nd} (1 − y|z̄|)^{−nd}; summed
-        from m_0 on this is at most F(y)/y^{m_0} · 1/(1 − 1/y) for every y between 1 and 1/max(|z|, |z̄|).
+        An occupation by k particles and l antiparticles reaches labels that sum to at most (k + l) s, s
+        that of R, and Σ |w_c| d_c over k + l = m is at most the coefficient of y^m in (1 − y|z|)^{−nd} (1 −
+        y|z̄|)^{−nd}; summed from m_0 on this is at most F(y)/y^{m_0} · 1/(1 − 1/y) for every y between 1
+        and 1/max(|z|, |z̄|).
         """
         z, zbar = np.broadcast_arrays(*(np.abs(self._value(name, values)) for name in ("z", "zbar")))
         power = self.copies * self.irrep.dimension

@@ -1,4 +1,4 @@
-"""Class functions that a user writes, in L, L*, tr(P, n), chi(…) and eigenphases, as exact expressions with numbers on the torus."""
+"""Class functions that a user writes: exact expressions with numbers on the torus."""
 
 from __future__ import annotations
 
@@ -39,8 +39,8 @@ def class_expression(group: SU, source: str | Expr | ClassFunction) -> ClassExpr
     group : SU
     source : str, Expr or ClassFunction
         Text goes through the safe grammar, for example ``"exp(h*(L + conj(L)) - k*chi(1,1))"``. Words are
-        ``L``, ``conj(L)`` (or ``L*``), ``E_k``, ``tr(P, n)``, ``chi(labels)``, eigenvalues ``x_j`` and eigenphases
-        ``theta_j``; every other name is a parameter.
+        ``L``, ``conj(L)`` (or ``L*``), ``E_k``, ``tr(P, n)``, ``chi(labels)``, eigenvalues ``x_j`` and
+        eigenphases ``theta_j``; every other name is a parameter.
 
     Raises
     ------
@@ -60,7 +60,8 @@ def class_expression(group: SU, source: str | Expr | ClassFunction) -> ClassExpr
         source = sympy.sympify(source)
     if not isinstance(source, Expr):
         raise ClassFunctionError(
-            f"{source!r} is no class function; give text such as '1 + h*(L + conj(L))', a SymPy expression or a "
+            f"{source!r} is no class function; give text such as '1 + h*(L + conj(L))', a SymPy expression "
+            f"or a "
             "ClassFunction."
         )
     result = ClassExpression(group, _canonical(source, group))
@@ -90,7 +91,7 @@ class ClassExpression:
     @property
     def parameters(self) -> tuple[Symbol, ...]:
         """Every other symbol, sorted by name."""
-        plain = self.expression.xreplace({word: sympy.S.One for word in self.words})
+        plain = self.expression.xreplace(dict.fromkeys(self.words, sympy.S.One))
         return free_parameters([plain])
 
     @property
@@ -182,10 +183,7 @@ def _finite(group: SU, expression: Expr) -> ClassFunction | None:
 
 def _check_class_function(candidate: ClassExpression) -> None:
     """A bare P is refused by name; symmetry and periodicity in eigenphases are tested at random points."""
-    if (
-        Symbol("P")
-        in candidate.expression.xreplace({word: sympy.S.One for word in candidate.words}).free_symbols
-    ):
+    if Symbol("P") in candidate.expression.xreplace(dict.fromkeys(candidate.words, sympy.S.One)).free_symbols:
         raise ClassFunctionError(
             "P is a matrix, no class function: write L for tr P, tr(P, n) or chi(labels)."
         )
@@ -223,6 +221,7 @@ def _refuse_change(before: NDArray[Any], after: NDArray[Any], what: str) -> None
     scale = 1 + np.abs(before)
     if not np.all(np.abs(after - before) <= _TOLERANCE * scale):
         raise ClassFunctionError(
-            f"The expression is not {what}, so it is no class function; write it in L, conj(L), tr(P, n), chi(…), or in "
+            f"The expression is not {what}, so it is no class function; write it in L, conj(L), tr(P, n), "
+            f"chi(…), or in "
             "all x_j = exp(I*theta_j) alike."
         )

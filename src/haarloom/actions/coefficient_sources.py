@@ -25,9 +25,9 @@ def coefficient_mapping(group: SU, source: Any) -> Mapping[Irrep | str, Any]:
     ----------
     group : SU
     source : mapping, str, Path or array
-        A mapping is taken as it is. Text or a path names a CSV file with a header, either ``irrep,k`` (trade names)
-        or ``a1,…,a{N−1},k`` (Dynkin labels). An array of one dimension lists k_r in basis order; one of N − 1
-        dimensions is indexed by the labels.
+        A mapping is taken as it is. Text or a path names a CSV file with a header, either ``irrep,k``
+        (trade names) or ``a1,…,a{N−1},k`` (Dynkin labels). An array of one dimension lists k_r in basis
+        order; one of N − 1 dimensions is indexed by the labels.
     """
     if isinstance(source, Mapping):
         return source
@@ -36,7 +36,8 @@ def coefficient_mapping(group: SU, source: Any) -> Mapping[Irrep | str, Any]:
     if isinstance(source, Sequence | np.ndarray):
         return _from_array(group, np.asarray(source))
     raise ParameterError(
-        f"coefficients = {type(source).__name__} is no table: give a mapping from irreps to values, the path of a CSV "
+        f"coefficients = {type(source).__name__} is no table: give a mapping from irreps to values, the "
+        f"path of a CSV "
         "file, or an array."
     )
 
@@ -52,7 +53,8 @@ def _from_array(group: SU, array: Any) -> dict[Irrep | str, Any]:
     if array.ndim == group.rank:
         return {group.irrep(*map(int, place)): value.item() for place, value in np.ndenumerate(array)}
     raise ParameterError(
-        f"An array of shape {array.shape} is no table for {group}: give k_r in basis order (one dimension) or by labels "
+        f"An array of shape {array.shape} is no table for {group}: give k_r in basis order (one dimension) "
+        f"or by labels "
         f"({group.rank} dimensions)."
     )
 

@@ -30,9 +30,9 @@ def link_from_coefficients(group: SU, coefficients: Any) -> CoefficientTable:
     ----------
     group : SU
     coefficients : mapping, str, Path or array
-        A mapping from an irrep, its name or its labels to k_r; the path of a CSV file with the header ``irrep,k`` or
-        ``a1,…,k``; an array in basis order, or of N − 1 dimensions by labels. Irreps that are not listed have k_r = 0; the
-        result's `note` says so.
+        A mapping from an irrep, its name or its labels to k_r; the path of a CSV file with the header
+        ``irrep,k`` or ``a1,…,k``; an array in basis order, or of N − 1 dimensions by labels. Irreps that
+        are not listed have k_r = 0; the result's `note` says so.
 
     Raises
     ------
@@ -50,9 +50,7 @@ def link_from_coefficients(group: SU, coefficients: Any) -> CoefficientTable:
     return CoefficientTable(group, irrep_table(group, coefficient_mapping(group, coefficients), _ENTRY))
 
 
-def irrep_table(
-    group: SU, table: Mapping[Irrep | str | tuple[int, ...], Parameter], entry: Field
-) -> tuple[tuple[Irrep, Expr], ...]:
+def irrep_table(group: SU, table: Mapping[Any, Parameter], entry: Field) -> tuple[tuple[Irrep, Expr], ...]:
     """A user's mapping of irreps to values, checked, exact and in basis order."""
     if not isinstance(table, Mapping) or not table:
         raise ParameterError(

@@ -44,9 +44,9 @@ class Radius:
 def convergence_radius(link: Link) -> Radius:
     """Where the strong-coupling series of k_r stops converging: at the nearest complex zero of w_0.
 
-    w_r and w_0 are entire in the coupling, so the quotient is singular only where w_0 vanishes. Zeros of the truncated
-    Taylor polynomial of w_0 converge to those of w_0 (A. Hurwitz, Math. Ann. 33 (1889) 246). For SU(2) Wilson this is the
-    first zero of the Bessel function J_1.
+    w_r and w_0 are entire in the coupling, so the quotient is singular only where w_0 vanishes. Zeros of
+    the truncated Taylor polynomial of w_0 converge to those of w_0 (A. Hurwitz, Math. Ann. 33 (1889) 246).
+    For SU(2) Wilson this is the first zero of the Bessel function J_1.
 
     Raises
     ------
@@ -70,7 +70,8 @@ def convergence_radius(link: Link) -> Radius:
     change = abs(abs(shorter) - abs(longer))
     if change > 1e-4 * abs(longer):
         raise ConvergenceError(
-            f"The nearest zero of w_0 does not settle by order {order}, the highest that fits for {link.group}."
+            f"The nearest zero of w_0 does not settle by order {order}, the highest that fits for "
+            f"{link.group}."
         )
     return Radius(abs(longer), change, longer)
 

@@ -15,9 +15,11 @@ __all__ = ["CONVENTIONS", "convert_coupling"]
 Name = Literal["g2", "beta", "tau"]
 
 CONVENTIONS: dict[str, str] = {
-    "g2": "g² a²: the squared coupling in lattice units, one plaquette exp[(2/g²)(Re tr U − N)], generators with T_F = 1/2",
+    "g2": "g² a²: the squared coupling in lattice units, one plaquette exp[(2/g²)(Re tr U − N)], generators "
+    "with T_F = 1/2",
     "beta": "β = 2N/g²: one plaquette exp[(β/N) Re tr U] (common practice)",
-    "tau": "τ = g²/2 = N/β: one plaquette w_r = exp(−τ C₂(r)); agrees with the Wilson and the Manton action at large β",
+    "tau": "τ = g²/2 = N/β: one plaquette w_r = exp(−τ C₂(r)); agrees with the Wilson and the Manton action "
+    "at large β",
 }
 """What each name means; the three are the same coupling where the lattice is fine, not at finite coupling."""
 
@@ -35,8 +37,8 @@ def convert_coupling(group: SU, value: Parameter, given: Name, wanted: Name) -> 
 
     Notes
     -----
-    This is the naive relation, exact for the leading term at small g². For couplings at which two actions share a
-    string tension use `haarloom.actions.matching.matching_curve`.
+    This is the naive relation, exact for the leading term at small g². For couplings at which two actions
+    share a string tension use `haarloom.actions.matching.matching_curve`.
 
     Examples
     --------

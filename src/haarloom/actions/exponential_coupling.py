@@ -88,6 +88,12 @@ class ExponentialCoupling(Link):
         rest = _rest(self.group.n, np.abs(lam), order + 1)
         return kernel, absolute * (8 + order) * _EPS + rest[..., None, None]
 
+    def kernel_density_at(self, angles: NDArray[Any], others: NDArray[Any], values: Values) -> NDArray[Any]:
+        """K(P, P′) on two copies of the torus, all N eigenphases given in each, broadcast against each other."""
+        loops = (np.exp(1j * np.asarray(phases)).sum(axis=-1) for phases in (angles, others))
+        first, second = loops
+        return np.asarray(np.exp(2 * float(self._value("lam", values)) * (first * second.conj()).real))
+
     def largest_outside(self, cutoff: int, values: Values) -> NDArray[Any]:
         """Norm of all orders m + n beyond the cutoff: proven, and the rest of the kernel lives inside it."""
         return _rest(self.group.n, np.abs(self._value("lam", values)), cutoff + 1)
@@ -95,11 +101,13 @@ class ExponentialCoupling(Link):
     def formula(self) -> str:
         """LaTeX of the double series."""
         lam = sympy.latex(self.lam)
-        return rf"k_{{rs}}=\sum_{{mn}}\frac{{{lam}^{{m+n}}}}{{m!\,n!}}\,c_r^{{mn}}c_s^{{mn}},\quad F^m\bar F^n=\sum_r c_r^{{mn}}r"
+        series = rf"k_{{rs}}=\sum_{{mn}}\frac{{{lam}^{{m+n}}}}{{m!\,n!}}\,c_r^{{mn}}c_s^{{mn}}"
+        return series + r",\quad F^m\bar F^n=\sum_r c_r^{mn}r"
 
     def latex(self) -> str:
         """The kernel in closed form."""
-        return rf"K(P,P')=\exp\left[{sympy.latex(self.lam)}\left(L{{L'}}^*+L^*L'\right)\right],\qquad {self.formula()}"
+        lam = sympy.latex(self.lam)
+        return rf"K(P,P')=\exp\left[{lam}\left(L{{L'}}^*+L^*L'\right)\right],\qquad {self.formula()}"
 
 
 def _terms(n: int, lam: NDArray[np.float64], orders: NDArray[np.int_]) -> NDArray[np.float64]:
@@ -128,7 +136,8 @@ def _orders(n: int, lam: float) -> int:
     small = np.flatnonzero(terms[::-1].cumsum()[::-1] < _EPS)
     if not len(small):
         raise SizeError(
-            f"lam = {lam:.4g} needs more than {_MOST_ORDERS} orders of exp[λ(L L'* + L* L')] on SU({n}); make it smaller."
+            f"lam = {lam:.4g} needs more than {_MOST_ORDERS} orders of exp[λ(L L'* + L* L')] on SU({n}); "
+            f"make it smaller."
         )
     return max(1, int(small[0]))
 
@@ -143,7 +152,8 @@ def _multiplicities(
     count = group.count_irreps(order)
     if count > _MOST_IRREPS:
         raise SizeError(
-            f"Order {order} of the exponential coupling reaches {count:,} irreps of {group}, more than {_MOST_IRREPS:,}; make "
+            f"Order {order} of the exponential coupling reaches {count:,} irreps of {group}, more than "
+            f"{_MOST_IRREPS:,}; make "
             "lam smaller."
         )
     basis = group.irreps(order)

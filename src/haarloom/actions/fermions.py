@@ -55,8 +55,8 @@ def static_fermions(
     irrep : Irrep, name or labels
         R, the fundamental unless said otherwise; the antiparticles are in its conjugate.
     **physical
-        Instead of z and z̄: ``mass``, ``mu``, ``temperature``; or ``kappa``, ``n_t``, ``mu`` for heavy Wilson quarks
-        at leading order in κ (see `haarloom.actions.fugacities`).
+        Instead of z and z̄: ``mass``, ``mu``, ``temperature``; or ``kappa``, ``n_t``, ``mu`` for heavy
+        Wilson quarks at leading order in κ (see `haarloom.actions.fugacities`).
 
     Examples
     --------
@@ -134,7 +134,8 @@ class StaticFermions(Site):
         count = self.group.count_irreps(reach)
         if count > 50 * _MOST_IRREPS:
             raise SizeError(
-                f"{self.copies} copies reach {count:,} irreps of {self.group}; ask for the coefficients of the "
+                f"{self.copies} copies reach {count:,} irreps of {self.group}; ask for the coefficients of "
+                f"the "
                 "irreps you need instead of for all."
             )
         return self.group.irreps(reach)
@@ -144,7 +145,8 @@ class StaticFermions(Site):
         support = self.support()
         if len(support) > _MOST_IRREPS:
             raise SizeError(
-                f"The class function has {len(support):,} characters, more than {_MOST_IRREPS:,}; ask for single "
+                f"The class function has {len(support):,} characters, more than {_MOST_IRREPS:,}; ask for "
+                f"single "
                 "coefficients, or for numbers."
             )
         return ClassFunction(self.group, {irrep: self.coefficient(irrep) for irrep in support})
@@ -156,7 +158,7 @@ class StaticFermions(Site):
         return super().reach(values)
 
     def coefficients_at(self, irreps: Sequence[Irrep], values: Values) -> tuple[NDArray[Any], NDArray[Any]]:
-        """w_c from its polynomial for few copies, from Toeplitz determinants for many; the error bounds rounding."""
+        """w_c from its polynomial for few copies, from Toeplitz determinants for many."""
         if irreps and self.factors and self._copies_of_antiparticles and self.copies > _FEW_COPIES:
             return multiplicative_coefficients(self.factors, irreps, values)
         z, zbar = np.broadcast_arrays(*evaluate([self.z, self.zbar], values))

@@ -1,4 +1,4 @@
-"""Fugacities of static matter from physical inputs: mass, chemical potential and temperature, or hopping parameter."""
+"""Fugacities of static matter from masses, chemical potentials and temperature, or from hopping."""
 
 from __future__ import annotations
 
@@ -44,9 +44,10 @@ def fugacities(
     fields : (Field, Field)
         Domains of z and z̄.
     **physical
-        ``mass``, ``mu`` and ``temperature``: z = e^{(μ − M)/T}, z̄ = e^{−(μ + M)/T}. ``kappa``, ``n_t`` and ``mu``: heavy
-        Wilson quarks to leading order in the hopping parameter, z = (2κ)^{N_t} e^{μ/T}, z̄ = (2κ)^{N_t} e^{−μ/T}, with
-        μ/T = N_t μ for μ in lattice units unless a temperature is given. None stands for "not given".
+        ``mass``, ``mu`` and ``temperature``: z = e^{(μ − M)/T}, z̄ = e^{−(μ + M)/T}. ``kappa``, ``n_t`` and
+        ``mu``: heavy Wilson quarks to leading order in the hopping parameter, z = (2κ)^{N_t} e^{μ/T}, z̄ =
+        (2κ)^{N_t} e^{−μ/T}, with μ/T = N_t μ for μ in lattice units unless a temperature is given. None
+        stands for "not given".
 
     Raises
     ------
@@ -61,7 +62,8 @@ def fugacities(
     if not given:
         if z is None:
             raise ParameterError(
-                "z is missing: give the fugacity z, or mass and temperature (and mu), or kappa and n_t (and mu)."
+                "z is missing: give the fugacity z, or mass and temperature (and mu), or kappa and n_t (and "
+                "mu)."
             )
         return as_parameter(z, fields[0]), as_parameter(zbar, fields[1])
     if z is not None or zbar != 0:
@@ -71,7 +73,8 @@ def fugacities(
         )
     if ("mass" in given) == ("kappa" in given):
         raise ParameterError(
-            f"Given: {', '.join(given)}. Static matter needs either mass and temperature, or kappa and n_t, not both "
+            f"Given: {', '.join(given)}. Static matter needs either mass and temperature, or kappa and n_t, "
+            f"not both "
             "and not neither; mu goes with each."
         )
     values = {name: as_parameter(value, PHYSICAL[name]) for name, value in given.items() if name != "n_t"}

@@ -1,7 +1,7 @@
 """Integer polynomials in the fugacities: the coefficients of det_R(1 + zP)^n det_R(1 + z̄P†)^n̄.
 
-Polynomials are mappings {(i, j): count} for Σ count z^i z̄^j. In the fundamental irrep every coefficient has a
-closed form of its own; in other irreps the antisymmetric powers are multiplied out.
+Polynomials are mappings {(i, j): count} for Σ count z^i z̄^j. In the fundamental irrep every coefficient
+has a closed form of its own; in other irreps the antisymmetric powers are multiplied out.
 """
 
 from __future__ import annotations
@@ -28,7 +28,8 @@ _MOST_TERMS = 400_000
 def general_linear_dimension(rows: tuple[int, ...], n: int) -> int:
     """Dimension of the irrep of GL(n) with the given Young diagram, by hook lengths and contents.
 
-    I. G. Macdonald, Symmetric Functions and Hall Polynomials, §I.3 example 4; zero if there are more rows than n.
+    I. G. Macdonald, Symmetric Functions and Hall Polynomials, §I.3 example 4; zero if there are more rows
+    than n.
     """
     rows = tuple(row for row in rows if row)
     heights = [sum(1 for row in rows if row > column) for column in range(rows[0])] if rows else []
@@ -42,9 +43,10 @@ def general_linear_dimension(rows: tuple[int, ...], n: int) -> int:
 def fundamental_monomials(rows: tuple[int, ...], n: int, nbar: int) -> dict[tuple[int, int], int]:
     """Coefficient of one irrep in det(1 + zP)^n det(1 + z̄P†)^n̄, P in the fundamental.
 
-    det(1 + z̄P†) = z̄^N det(1 + P/z̄) turns both factors into one product over eigenvalues, whose coefficients
-    are Σ_m det[e_{λ_i − i + j + m}], e_k the elementary symmetric function of n times z and n̄ times 1/z̄
-    (dual Jacobi–Trudi and dual Cauchy identities, Macdonald §I.3–4). In u = z z̄ it has one variable.
+    det(1 + z̄P†) = z̄^N det(1 + P/z̄) turns both factors into one product over eigenvalues, whose
+    coefficients are Σ_m det[e_{λ_i − i + j + m}], e_k the elementary symmetric function of n times z and n̄
+    times 1/z̄ (dual Jacobi–Trudi and dual Cauchy identities, Macdonald §I.3–4). In u = z z̄ it has one
+    variable.
 
     Parameters
     ----------

@@ -107,7 +107,8 @@ class HeatKernel(Link):
     def plaquette_at(self, angles: NDArray[Any], values: Values) -> NDArray[Any] | None:
         """w(U) = Σ_r d_r exp(−τ C₂) χ_r(U) from its sum over windings, at one value of t > 0.
 
-        For τN(N² − 1)/24 > 20 windings cancel to more than nine digits; there the few characters that matter are summed.
+        For τN(N² − 1)/24 > 20 windings cancel to more than nine digits; there the few characters that
+        matter are summed.
         """
         tau = float(self._value("t", values)) / self.plaquettes
         if tau == 0:

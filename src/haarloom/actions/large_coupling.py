@@ -1,7 +1,7 @@
 """Large couplings: how k_r approaches 1, exactly through second order in the width τ of the plaquette weight.
 
-With ln w = −p₂/2τ + a p₄ + b p₂² + O(θ⁶), p_k = Σ_j θ_j^k, the eigenphases of U are those of a traceless Gaussian
-Hermitian matrix times corrections, and
+With ln w = −p₂/2τ + a p₄ + b p₂² + O(θ⁶), p_k = Σ_j θ_j^k, the eigenphases of U are those of a traceless
+Gaussian Hermitian matrix times corrections, and
 
     k_r = 1 − C₂(r) τ + c_r τ² + O(τ³).
 
@@ -49,9 +49,9 @@ def approach_to_one(link: Link, irrep: Irrep) -> Expr:
 
     Notes
     -----
-    χ_r/d_r = 1 − T p₂/d + (A p₄ + B p₂²)/24d, and ∏ 4 sin²(θ_ij/2) = ∏ θ_ij² (1 − N p₂/12 + …). In the traceless
-    Gaussian ensemble with D = N² − 1: ⟨p₂⟩ = Dτ, ⟨p₂²⟩ = D(D + 2)τ², ⟨p₄⟩ = (2N³ − 5N + 3/N)τ²; a homogeneous p of
-    degree k has ⟨p₂ p⟩ = (D + k)τ⟨p⟩. So the covariances with p₂ are 2Dτ², 4τ⟨p₄⟩, 4τ⟨p₂²⟩.
+    χ_r/d_r = 1 − T p₂/d + (A p₄ + B p₂²)/24d, and ∏ 4 sin²(θ_ij/2) = ∏ θ_ij² (1 − N p₂/12 + …). In the
+    traceless Gaussian ensemble with D = N² − 1: ⟨p₂⟩ = Dτ, ⟨p₂²⟩ = D(D + 2)τ², ⟨p₄⟩ = (2N³ − 5N + 3/N)τ²; a
+    homogeneous p of degree k has ⟨p₂ p⟩ = (D + k)τ⟨p⟩. So the covariances with p₂ are 2Dτ², 4τ⟨p₄⟩, 4τ⟨p₂²⟩.
     """
     inverse, a, b = link.inverse_width()
     tau, n = 1 / inverse, link.group.n

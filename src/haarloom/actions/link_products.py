@@ -45,7 +45,8 @@ def stacked_links(*links: Link) -> StackedLinks:
 
 
 def coupled_link(gauge: Link, coupling: Link) -> CoupledLink:
-    """The pointwise product of two kernels, K(P, P′) K′(P, P′), one of them a finite coupling; written ``a * b``.
+    """The pointwise product of two kernels, K(P, P′) K′(P, P′), one of them a finite coupling; written ``a
+    * b``.
 
     Raises
     ------
@@ -56,7 +57,8 @@ def coupled_link(gauge: Link, coupling: Link) -> CoupledLink:
         gauge, coupling = coupling, gauge
     if not isinstance(coupling, BilinearCoupling | LoopCoupling) or not gauge.diagonal:
         raise ParameterError(
-            f"The kernels '{gauge.kind}' and '{coupling.kind}' cannot be multiplied pointwise: one must be a finite coupling "
+            f"The kernels '{gauge.kind}' and '{coupling.kind}' cannot be multiplied pointwise: one must be "
+            f"a finite coupling "
             "(loop_coupling or bilinear_coupling), the other diagonal. For strips one after the other use @."
         )
     _one_group([gauge, coupling])
@@ -192,7 +194,8 @@ class CoupledLink(Link):
         return matrix, error
 
     def largest_outside(self, cutoff: int, values: Values) -> NDArray[Any]:
-        """Bound of the norm left out: k_u beyond the cutoff less the reach of the coupling, times Σ |λ_ab| d_a d_b: proven
+        """Bound of the norm left out: k_u beyond the cutoff less the reach of the coupling, times Σ |λ_ab|
+        d_a d_b: proven
         where the bound of the gauge action is.
         """
         pairs = _pairs(self.coupling)
@@ -204,7 +207,8 @@ class CoupledLink(Link):
 
     def formula(self) -> str:
         """LaTeX of the sum over irreps."""
-        return rf"k_{{rs}}=\sum_{{ab}}\lambda_{{ab}}\sum_u k_u N_{{ua}}^r N_{{ub}}^s,\quad k_u={self.gauge.formula()}"
+        sums = r"k_{rs}=\sum_{ab}\lambda_{ab}\sum_u k_u N_{ua}^r N_{ub}^s"
+        return rf"{sums},\quad k_u={self.gauge.formula()}"
 
     def latex(self) -> str:
         """Both kernels multiplied."""

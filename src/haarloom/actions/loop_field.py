@@ -40,7 +40,8 @@ def loop_field(group: SU, fields: Mapping[Irrep | str | tuple[int, ...], Paramet
     Examples
     --------
     >>> from haarloom.algebra.group import SU
-    >>> float(loop_field(SU(2), {"2": 0.5}).coefficient(SU(2).trivial).evalf())  # I_1(1)/0.5 = 1.13031820798...
+    >>> float(loop_field(SU(2), {"2": 0.5}).coefficient(SU(2).trivial).evalf())  # I_1(1)/0.5 =
+    1.13031820798...
     1.1303182079849...
     """
     refuse_group("loop_field", group)
@@ -98,8 +99,8 @@ class LoopField(TorusSite):
         """Σ |w_c| d_c beyond the cutoff: proven, from the exponential series.
 
         With s the largest sum of labels among the fields, m factors reach at most m·s, and all of them
-        together have Σ |w_c| d_c ≤ x^m/m!, x = Σ |h_r| d_r; the rest of that series is below its first term times
-        1/(1 − x/(m + 1)) once m + 1 > x, and below e^x always.
+        together have Σ |w_c| d_c ≤ x^m/m!, x = Σ |h_r| d_r; the rest of that series is below its first term
+        times 1/(1 − x/(m + 1)) once m + 1 > x, and below e^x always.
         """
         numbers = evaluate([value for _, value in self.fields], values)
         x = np.asarray(sum(np.abs(h) * r.dimension for (r, _), h in zip(self.fields, numbers, strict=True)))

@@ -30,8 +30,8 @@ def manton(group: SU, beta: Parameter, plaquettes: int = 1) -> Manton:
     ----------
     group : SU
     beta : number, expression or name
-        β ≥ 0 in w(U) = exp[−(β/2N) d²(U)], d² = min Σ_j θ_j² over all phases with Σ_j θ_j = 0; normalised to agree
-        with exp[(β/N) Re tr U] near U = 1.
+        β ≥ 0 in w(U) = exp[−(β/2N) d²(U)], d² = min Σ_j θ_j² over all phases with Σ_j θ_j = 0; normalised
+        to agree with exp[(β/N) Re tr U] near U = 1.
     plaquettes : int
         N_t.
 

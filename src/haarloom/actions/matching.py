@@ -182,6 +182,7 @@ def _bracket(gap: Callable[[float], float], value: float, link: Link, observable
         if np.isfinite(gaps[i : i + 2]).all() and gaps[i] * gaps[i + 1] <= 0:
             return logs[i], logs[i + 1]
     raise ConvergenceError(
-        f"No coupling {link.parameters[0].name} of '{link.kind}' between {_LOW} and {_HIGH} has {observable} = {value:.6g}; "
+        f"No coupling {link.parameters[0].name} of '{link.kind}' between {_LOW} and {_HIGH} has "
+        f"{observable} = {value:.6g}; "
         "match at other couplings or with another observable."
     )

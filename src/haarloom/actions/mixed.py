@@ -40,8 +40,8 @@ def mixed_wilson(
     ----------
     group : SU
     couplings : mapping
-        From an irrep, its name or its labels to β_r, of either sign; r and its conjugate mean the same term. With the
-        fundamental and the adjoint alone this is the mixed fundamental–adjoint action.
+        From an irrep, its name or its labels to β_r, of either sign; r and its conjugate mean the same
+        term. With the fundamental and the adjoint alone this is the mixed fundamental–adjoint action.
     plaquettes : int
         N_t.
 
@@ -59,7 +59,8 @@ def mixed_wilson(
             )
         if irrep.conjugate != irrep and irrep.conjugate in dict(table):
             raise ParameterError(
-                f"Re χ is the same for {irrep.name} and {irrep.conjugate.name}; list one of them, with the sum."
+                f"Re χ is the same for {irrep.name} and {irrep.conjugate.name}; list one of them, with the "
+                f"sum."
             )
     return MixedWilson(group, table, positive_integer("plaquettes", plaquettes))
 

@@ -1,7 +1,7 @@
 """Numbers for site weights that are products over the eigenvalues of P, W(P) = ∏_j φ(x_j).
 
-φ is a product of simple factors: (1 + zx)^n of fermions, (1 − zx)^{−n} of bosons, exp(hx) of loop fields, and the same
-in 1/x for antiparticles and for L*. Products of such weights are again of this form.
+φ is a product of simple factors: (1 + zx)^n of fermions, (1 − zx)^{−n} of bosons, exp(hx) of loop fields,
+and the same in 1/x for antiparticles and for L*. Products of such weights are again of this form.
 """
 
 from __future__ import annotations
@@ -109,9 +109,8 @@ def _one_point(
     reach = int(partitions.max()) + margin + 2 * n
     if any(isinstance(factor.argument, complex) for factor in point):
         phi = _laurent(point, order, reach + n, _complex_series)
-        w, error = toeplitz_complex(partitions, np.array(phi, dtype=complex), margin)
-        scale = float(np.abs(phi).max())
-        return w, error + scale**n * 2.0**-_OMITTED_BITS
+        complex_w, error = toeplitz_complex(partitions, np.array(phi, dtype=complex), margin)
+        return complex_w, error + float(np.abs(phi).max()) ** n * 2.0**-_OMITTED_BITS
     phi = _laurent(point, order, reach + n, _integer_series)
     rows = difference_rows(phi, n)
     scale = rows.scale / (1 << n * _BITS)
@@ -157,7 +156,8 @@ def _laurent(point: tuple[_Number, ...], order: int, reach: int, series: Any) ->
     forward = _series([f for f in point if f.direction > 0], order, series)
     backward = _series([f for f in point if f.direction < 0], order, series)
     product = _convolved(forward, backward[::-1])  # place order + l
-    return [product[order + l] if 0 <= order + l < len(product) else 0 for l in range(-reach, reach + 1)]
+    places = range(order - reach, order + reach + 1)
+    return [product[place] if 0 <= place < len(product) else 0 for place in places]
 
 
 def _series(factors: Sequence[_Number], order: int, series: Any) -> list[Any]:

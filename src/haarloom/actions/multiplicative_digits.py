@@ -1,4 +1,4 @@
-"""Coefficients of multiplicative site weights to any number of digits, by Toeplitz determinants of long integers."""
+"""Coefficients of multiplicative site weights to any number of digits."""
 
 from __future__ import annotations
 
@@ -23,8 +23,8 @@ def digits_of(
 ) -> Expr | None:
     """w_c rounded to the digits asked for, or None if an argument is not real.
 
-    The determinants are summed with more and more bits and orders until two rounds agree to two digits more than
-    asked for.
+    The determinants are summed with more and more bits and orders until two rounds agree to two digits more
+    than asked for.
 
     Raises
     ------

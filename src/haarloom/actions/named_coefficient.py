@@ -23,8 +23,8 @@ _FLOAT_BITS = 53
 class _Defining(Protocol):
     """What a weight must offer to stand behind a named coefficient."""
 
-    letter: str
-
+    @property
+    def letter(self) -> str: ...
     @property
     def parameters(self) -> tuple[sympy.Symbol, ...]: ...
     @property
@@ -54,10 +54,11 @@ class _Holder(sympy.Atom):
 
 
 class NamedCoefficient(sympy.Expr):
-    """Coefficient of one irrep in a weight, or element of a pair in a kernel, as a function of the weight's parameters.
+    """Coefficient of one irrep in a weight, or element of a pair in a kernel, as a function of the weight's
+    parameters.
 
-    Build it with `NamedCoefficient.of(weight, irrep)`. ``evalf`` gives up to 15 digits from the weight's numbers, and any
-    number where the weight has a method ``digits_of(irrep, values, digits)``.
+    Build it with `NamedCoefficient.of(weight, irrep)`. ``evalf`` gives up to 15 digits from the weight's
+    numbers, and any number where the weight has a method ``digits_of(irrep, values, digits)``.
     """
 
     is_commutative = True
@@ -68,7 +69,7 @@ class NamedCoefficient(sympy.Expr):
 
     @classmethod
     def of(cls, weight: _Defining, *irreps: Irrep) -> NamedCoefficient:
-        """The coefficient of the irrep (the element of the pair) in the weight, at the weight's own parameters."""
+        """The coefficient of the irrep (the element of the pair), at the weight's own parameters."""
         return cls(_Holder(weight), [irrep.labels for irrep in irreps], *weight.parameters)
 
     @property
@@ -90,7 +91,7 @@ class NamedCoefficient(sympy.Expr):
         if prec > _FLOAT_BITS and hasattr(self.weight, "digits_of"):
             exact = self.weight.digits_of(self.irreps[0], dict(zip(names, arguments, strict=True)), digits)
             if exact is not None:
-                return exact  # type: ignore[no-any-return]
+                return exact
         numbers = {name: _plain(value) for name, value in zip(names, arguments, strict=True)}
         if len(self.irreps) == 2:
             value = self.weight.kernel_at(self.irreps, numbers)[0][0, 1]

@@ -12,7 +12,7 @@ from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 from functools import lru_cache
-from typing import Any
+from typing import Any, TypeAlias
 
 import numpy as np
 import sympy
@@ -33,8 +33,8 @@ __all__ = [
     "named_values",
 ]
 
-Parameter = int | float | complex | Fraction | Expr | str
-Values = Mapping[str, ArrayLike]
+Parameter: TypeAlias = "int | float | complex | Fraction | Expr | str"
+Values: TypeAlias = Mapping[str, ArrayLike]
 
 _NAME = re.compile(r"[A-Za-z][A-Za-z0-9_]*\Z")
 _NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eE][+-]?\d+)?(/\d+)?\Z")
@@ -119,8 +119,9 @@ def as_parameter(value: Parameter, field: Field) -> Expr:
     Parameters
     ----------
     value : int, float, complex, Fraction, Expr or str
-        A float becomes the exact decimal that it prints as. A string that is a name becomes a plain symbol; one that is a decimal or a quotient becomes
-        an exact rational; any other goes through the safe expression grammar.
+        A float becomes the exact decimal that it prints as. A string that is a name becomes a plain symbol;
+        one that is a decimal or a quotient becomes an exact rational; any other goes through the safe
+        expression grammar.
     field : Field
         Name, domain and meaning, for the check and for the message.
 

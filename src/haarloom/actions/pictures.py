@@ -1,4 +1,4 @@
-"""Small pictures and tables for results in a notebook: plain SVG and HTML that follow the page's own colours."""
+"""Small pictures and tables for a notebook: SVG and HTML that follow the page's own colours."""
 
 from __future__ import annotations
 
@@ -48,7 +48,8 @@ def line_picture(
 def heat_picture(
     values: NDArray[np.float64], corners: tuple[float, float, float, float], across: str, up: str
 ) -> str:
-    """A real function on a grid as an image in SVG text: blue where positive, red where negative, fainter towards zero.
+    """A real function on a grid as an image in SVG text: blue where positive, red where negative, fainter
+    towards zero.
 
     Parameters
     ----------
@@ -64,8 +65,8 @@ def heat_picture(
     pixels[..., 3] = np.round(255 * np.abs(strength))
     image = base64.b64encode(_png(pixels[::-1])).decode("ascii")
     body = (
-        f'<image x="{_LEFT}" y="{_TOP}" width="{frame.width}" height="{frame.height}" preserveAspectRatio="none" '
-        f'href="data:image/png;base64,{image}"/>'
+        f'<image x="{_LEFT}" y="{_TOP}" width="{frame.width}" height="{frame.height}" '
+        f'preserveAspectRatio="none" href="data:image/png;base64,{image}"/>'
     )
     return _svg(_WIDTH, _HEIGHT, f"map over {across} and {up}", body + frame.axes(across, up))
 
@@ -96,9 +97,8 @@ class _Frame:
         return _LEFT + across * self.width, _TOP + (1 - up) * self.height
 
     def axes(self, across: str, up: str) -> str:
-        marks = [
-            f'<rect x="{_LEFT}" y="{_TOP}" width="{self.width}" height="{self.height}" fill="none" stroke="currentColor"/>'
-        ]
+        size = f'x="{_LEFT}" y="{_TOP}" width="{self.width}" height="{self.height}"'
+        marks = [f'<rect {size} fill="none" stroke="currentColor"/>']
         for share in (0.0, 0.5, 1.0):
             x, y = self.left + share * (self.right - self.left), self.low + share * (self.high - self.low)
             px, py = self.place(x, y)
@@ -118,7 +118,8 @@ def _path(frame: _Frame, x: NDArray[np.float64], y: NDArray[np.float64], dashes:
             pen = "L"
         else:
             pen = "M"
-    return f'<path d="{" ".join(steps)}" fill="none" stroke="currentColor" stroke-width="1.6" stroke-dasharray="{dashes}"/>'
+    look = f'fill="none" stroke="currentColor" stroke-width="1.6" stroke-dasharray="{dashes}"'
+    return f'<path d="{" ".join(steps)}" {look}/>'
 
 
 def _legend(index: int, name: str) -> str:
@@ -130,7 +131,8 @@ def _legend(index: int, name: str) -> str:
 
 
 def _text(x: float, y: float, text: str, anchor: str) -> str:
-    return f'<text x="{x:.1f}" y="{y:.1f}" font-size="11" fill="currentColor" text-anchor="{anchor}">{escape(text)}</text>'
+    look = f'font-size="11" fill="currentColor" text-anchor="{anchor}"'
+    return f'<text x="{x:.1f}" y="{y:.1f}" {look}>{escape(text)}</text>'
 
 
 def _svg(width: int, height: int, title: str, body: str) -> str:

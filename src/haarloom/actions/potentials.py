@@ -44,8 +44,8 @@ def polynomial_potential(
 
     Notes
     -----
-    For SU(3) the form of C. Ratti, M. A. Thaler, W. Weise, Phys. Rev. D 73 (2006) 014019. For other N the cubic term is
-    replaced by the N-th power, which has the same symmetry under the centre.
+    For SU(3) the form of C. Ratti, M. A. Thaler, W. Weise, Phys. Rev. D 73 (2006) 014019. For other N the
+    cubic term is replaced by the N-th power, which has the same symmetry under the centre.
     """
     refuse_group("polynomial_potential", group)
     coefficients = (
@@ -74,7 +74,8 @@ def logarithmic_potential(
 
     Notes
     -----
-    For SU(3) the form of S. Rößner, C. Ratti, W. Weise, Phys. Rev. D 75 (2007) 034007, where H = 1 − 6ℓℓ* + 4(ℓ³ + ℓ*³) − 3(ℓℓ*)².
+    For SU(3) the form of S. Rößner, C. Ratti, W. Weise, Phys. Rev. D 75 (2007) 034007, where H = 1 − 6ℓℓ* +
+    4(ℓ³ + ℓ*³) − 3(ℓℓ*)².
     """
     refuse_group("logarithmic_potential", group)
     return LogarithmicPotential(
@@ -90,7 +91,8 @@ def _not_positive(b: Expr) -> Expr:
 
 def _refuse_pole(b: float) -> None:
     raise ParameterError(
-        f"b = {b:.6g} is not allowed: H^(-v b) is infinite where two eigenvalues coincide, θ_i = θ_j. Give b ≤ 0."
+        f"b = {b:.6g} is not allowed: H^(-v b) is infinite where two eigenvalues coincide, θ_i = θ_j. Give "
+        f"b ≤ 0."
     )
 
 
@@ -125,7 +127,8 @@ class PolynomialPotential(TorusSite):
         """The exponential of the potential."""
         n = self.group.n
         b2, b3, b4, v = (sympy.latex(value) for value in (self.b2, self.b3, self.b4, self.volume))
-        body = rf"\frac{{{b2}}}{{2}}|\ell|^2+\frac{{{b3}}}{{6}}(\ell^{n}+\ell^{{*{n}}})-\frac{{{b4}}}{{4}}|\ell|^4"
+        body = rf"\frac{{{b2}}}{{2}}|\ell|^2+\frac{{{b3}}}{{6}}(\ell^{n}+\ell^{{*{n}}})"
+        body += rf"-\frac{{{b4}}}{{4}}|\ell|^4"
         return rf"W(P)=\exp\left[{v}\left({body}\right)\right],\quad\ell=L/{n}"
 
 
@@ -159,5 +162,6 @@ class LogarithmicPotential(TorusSite):
 
     def latex(self) -> str:
         """The exponential and the power of the measure."""
-        a, b, v = (sympy.latex(value) for value in (self.a, self.b, self.volume))
-        return rf"W(P)=\exp\left[\frac{{{v}\,{a}}}{{2}}|\ell|^2\right]H^{{-\left({v}\right)\left({b}\right)}},\quad\ell=L/{self.group.n}"
+        a = sympy.latex(self.volume * self.a)
+        power = sympy.latex(-self.volume * self.b)
+        return rf"W(P)=\exp\left[\frac{{{a}}}{{2}}|\ell|^2\right]H^{{{power}}},\quad\ell=L/{self.group.n}"

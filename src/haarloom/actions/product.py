@@ -66,7 +66,9 @@ class SiteProduct(TorusSite):
     def factors(self) -> tuple[Factor, ...] | None:
         """Factors over the eigenvalues of P, if every site weight has them."""
         parts = [getattr(site, "factors", None) for site in self.sites]
-        return None if None in parts else tuple(factor for part in parts for factor in part)
+        if any(part is None for part in parts):
+            return None
+        return tuple(factor for part in parts if part is not None for factor in part)
 
     def class_function(self) -> ClassFunction:
         """The exact product, if every factor is finite."""
@@ -78,7 +80,7 @@ class SiteProduct(TorusSite):
         return result
 
     def coefficient(self, irrep: Irrep) -> Expr:
-        """Exact w_c; with one infinite factor a finite sum over its coefficients, with more a named coefficient."""
+        """Exact w_c; with one infinite factor a finite sum over it, with more a named coefficient."""
         if self.finite:
             return self.class_function()[irrep]
         infinite = [site for site in self.sites if not site.finite]
@@ -102,7 +104,7 @@ class SiteProduct(TorusSite):
         return None if None in reaches else sum(reach for reach in reaches if reach is not None)
 
     def coefficients_at(self, irreps: Sequence[Irrep], values: Values) -> tuple[NDArray[Any], NDArray[Any]]:
-        """w_c by Toeplitz determinants if all factors are products over eigenvalues, else from exact ones or the torus."""
+        """w_c by Toeplitz determinants if all factors allow it, else from exact ones or the torus."""
         if irreps and self.factors:
             return multiplicative_coefficients(self.factors, irreps, values)
         if self.finite:
@@ -117,7 +119,8 @@ class SiteProduct(TorusSite):
         """Σ |w_c| d_c beyond the cutoff.
 
         Labels that sum to more than the cutoff need one factor beyond its share of it. With Σ|w|d
-        submultiplicative, Σ_i tail_i(share_i) ∏_{j≠i} S_j, S_j = Σ |w_c| d_c of factor j. As good as the tails of the factors.
+        submultiplicative, Σ_i tail_i(share_i) ∏_{j≠i} S_j, S_j = Σ |w_c| d_c of factor j. As good as the
+        tails of the factors.
         """
         if self.finite:
             return Site.tail_bound(self, cutoff, values)

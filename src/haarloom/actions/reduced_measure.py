@@ -36,8 +36,8 @@ def haar_power(group: SU, power: Parameter) -> HaarPower:
     ----------
     group : SU
     power : number, expression or name
-        p ≥ 0; negative powers have poles where eigenvalues coincide. Small whole numbers give an exact finite class
-        function for N ≤ 5.
+        p ≥ 0; negative powers have poles where eigenvalues coincide. Small whole numbers give an exact
+        finite class function for N ≤ 5.
 
     Notes
     -----
@@ -71,7 +71,7 @@ class HaarPower(TorusSite):
         return self.class_function()[irrep] if self.finite else super().coefficient(irrep)
 
     def coefficients_at(self, irreps: Sequence[Irrep], values: Values) -> tuple[NDArray[Any], NDArray[Any]]:
-        """w_c exactly if finite, else by transform; a power that is not whole is creased where eigenvalues meet."""
+        """w_c exactly if finite, else by transform; other powers are creased where eigenvalues meet."""
         self._value("power", values)
         return (
             Site.coefficients_at(self, irreps, values)

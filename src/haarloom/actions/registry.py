@@ -1,4 +1,4 @@
-"""One list of all built-in weights: what documents rebuild models from and panes build their controls from."""
+"""The list of all built-in weights, from which documents and panes rebuild them."""
 
 from __future__ import annotations
 
@@ -138,6 +138,7 @@ def build(group: SU, description: Mapping[str, Any]) -> Any:
     if missing or set(fields) - known:
         raise DocumentError(
             f"A weight of kind {kind!r} has the fields {', '.join(sorted(known))}; "
-            f"missing: {', '.join(sorted(missing)) or 'none'}; unknown: {', '.join(sorted(set(fields) - known)) or 'none'}."
+            f"missing: {', '.join(sorted(missing)) or 'none'}; unknown: "
+            f"{', '.join(sorted(set(fields) - known)) or 'none'}."
         )
     return entry.constructor(group, **fields)

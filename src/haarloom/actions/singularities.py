@@ -77,7 +77,8 @@ def _check(function: ClassExpression, base: _Base, values: dict[str, complex]) -
             place, least = _least(inner, start, values)
             if least <= _ZERO * size:
                 raise ConvergenceError(
-                    f"{base.shown} is infinite at eigenphases {_named(place)}: a pole on the torus. Change the parameters "
+                    f"{base.shown} is infinite at eigenphases {_named(place)}: a pole on the torus. Change "
+                    f"the parameters "
                     "so that it stays away from zero."
                 )
     if base.cut:
@@ -94,7 +95,8 @@ def _refuse_cut(base: _Base, nodes: NDArray[np.float64], sampled: NDArray[Any], 
         candidates = np.flatnonzero(on if on.any() else left)
         place = nodes[candidates[np.argmin(np.abs(sampled[candidates].imag))]]
         raise ConvergenceError(
-            f"{base.shown} has its branch cut on the torus, near eigenphases {_named(place)}: the weight jumps there. "
+            f"{base.shown} has its branch cut on the torus, near eigenphases {_named(place)}: the weight "
+            f"jumps there. "
             "Change the parameters so that the base keeps off the negative real axis."
         )
 

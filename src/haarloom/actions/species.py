@@ -1,4 +1,4 @@
-"""Several species of static matter at once, each with its own mass, chemical potential, isospin and statistics."""
+"""Several species of static matter at once, each with inputs of its own."""
 
 from __future__ import annotations
 
@@ -84,6 +84,6 @@ def static_species(
         mu = as_parameter(one.mu, PHYSICAL["mu"]) + as_parameter(one.isospin, _ISOSPIN) * splitting
         build = constructors[one.statistics]
         factors.append(
-            build(group, copies=one.copies, irrep=one.irrep, mass=one.mass, mu=mu, temperature=temperature)  # type: ignore[operator]
+            build(group, copies=one.copies, irrep=one.irrep, mass=one.mass, mu=mu, temperature=temperature)
         )
     return factors[0] if len(factors) == 1 else product_of(*factors)

@@ -1,7 +1,7 @@
 """Strong-coupling (character) series: k_r in powers of the couplings, with rational coefficients.
 
-For w(U) = e^{S(U)} with S a finite class function, w_r = Σ_M ⟨χ_r* S^M⟩/(M! d_r), and powers of S are tensor products: every
-coefficient is a count of walks on the irreps times the couplings.
+For w(U) = e^{S(U)} with S a finite class function, w_r = Σ_M ⟨χ_r* S^M⟩/(M! d_r), and powers of S are
+tensor products: every coefficient is a count of walks on the irreps times the couplings.
 """
 
 from __future__ import annotations
@@ -89,7 +89,7 @@ class _Moments:
 
 @lru_cache(maxsize=8)
 def _moments(exponent: ClassFunction, order: int) -> tuple[_Moments, Mapping[Expr, Expr]]:
-    """Moments in a polynomial ring with one generator for each coupling, and what the generators stand for."""
+    """Moments with one polynomial generator for each coupling, and what the generators stand for."""
     parts = {labels: value.as_coeff_Mul() for labels, value in exponent.by_labels().items()}
     couplings = sorted({rest for _, rest in parts.values()}, key=sympy.default_sort_key)
     generators = [sympy.Symbol(f"g{i}") for i in range(len(couplings))]

@@ -11,6 +11,7 @@ taken in exact integers before rounding: half of the digits that would cancel ne
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
@@ -70,7 +71,7 @@ def difference_rows(coefficients: Sequence[int], n: int) -> Rows:
         largest = max(map(abs, part)) or 1
         scale *= largest
         high[i], low[i] = _pair_of_floats(part, largest, both=n > 3)
-        row = [after - before for before, after in zip(row, row[1:], strict=False)]
+        row = [after - before for before, after in itertools.pairwise(row)]
     return Rows(high, low, scale)
 
 
@@ -120,7 +121,8 @@ def _three(partitions: Partitions, points: Sequence[Rows], margin: int) -> tuple
     for i, j, k in ((0, 1, 2), (1, 2, 0), (2, 0, 1)):
         parts = windows[:, i], windows[:, j], last[:, k]
         w += _minor_sum(*parts, first, second, -1.0)
-        size += _minor_sum(*map(np.abs, parts), first, second, 1.0)
+        a, b, c = (np.abs(part) for part in parts)
+        size += _minor_sum(a, b, c, first, second, 1.0)
     return w, (8 + last.shape[2] ** 0.5) * _EPS * size
 
 

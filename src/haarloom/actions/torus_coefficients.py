@@ -1,7 +1,8 @@
-"""Character coefficients of a class function given by its values on the torus, the grid refined until they settle.
+"""Character coefficients of a class function given by its values on the torus, the grid refined until they
+settle.
 
-The trapezoidal rule over the nodes of one alcove (`haarloom.torus.alcove`) is exact up to aliasing, which the last
-refinement measures. Its weights are positive, so rounding stays small against ∫dP |f|.
+The trapezoidal rule over the nodes of one alcove (`haarloom.torus.alcove`) is exact up to aliasing, which
+the last refinement measures. Its weights are positive, so rounding stays small against ∫dP |f|.
 """
 
 from __future__ import annotations
@@ -75,7 +76,8 @@ class SampledFunction:
         points = max(longest + 2 * self.group.n + 3, 16 if self.group.n < 4 else 10)
         if not self._fits(points + points // 2, len(irreps)):
             raise SizeError(
-                f"Coefficients of {len(irreps):,} irreps of {self.group} with labels up to Σ a_i = {longest} need "
+                f"Coefficients of {len(irreps):,} irreps of {self.group} with labels up to Σ a_i = "
+                f"{longest} need "
                 f"{points + points // 2} points for each of {self.group.rank} eigenphases, more than fit; "
                 "ask for lower irreps, or for fewer at a time."
             )
@@ -114,7 +116,8 @@ class SampledFunction:
         if bad.any():
             place = ", ".join(f"{angle:.4f}" for angle in angles[bad][0])
             raise ConvergenceError(
-                f"The weight is infinite or undefined at eigenphases ({place}): a pole or branch point on the torus "
+                f"The weight is infinite or undefined at eigenphases ({place}): a pole or branch point on "
+                f"the torus "
                 "of eigenphases. Keep the parameters away from singular values."
             )
         return values

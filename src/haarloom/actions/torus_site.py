@@ -26,7 +26,7 @@ _LAST_SHELL = {2: 120, 3: 36, 4: 12, 5: 7, 6: 5, 7: 4, 8: 3}
 
 
 def each_point(weight: Any, values: Values) -> tuple[tuple[int, ...], list[Point]]:
-    """The points of parameter space that arrays of values span: their shape, and (name, number) pairs of each."""
+    """The points that arrays of values span: their shape, and (name, number) pairs of each."""
     names = [symbol.name for symbol in weight.parameters]
     if not names:
         return (), [()]
@@ -97,7 +97,8 @@ def _shell_sums(site: TorusSite, point: Point) -> tuple[NDArray[np.float64], NDA
     w, error = sampled_function(site, "density_at", point).coefficients(irreps)
     dimensions = np.array([float(irrep.dimension) for irrep in irreps])
     shell = np.array([sum(irrep.labels) for irrep in irreps])
-    return np.bincount(shell, np.abs(w) * dimensions), np.bincount(shell, error * dimensions)
+    sums, slack = (np.bincount(shell, size * dimensions) for size in (np.abs(w), error))
+    return np.asarray(sums, dtype=float), np.asarray(slack, dtype=float)
 
 
 def _tail(site: TorusSite, cutoff: int, point: Point) -> float:

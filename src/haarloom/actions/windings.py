@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from functools import lru_cache
 from math import ceil, factorial, prod, sqrt
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -86,13 +87,13 @@ def winding_vectors(n: int, norm: int, most: int) -> NDArray[np.int_] | None:
     return np.array(found)
 
 
-def _gaps(theta: NDArray[np.generic]) -> NDArray[np.generic]:
+def _gaps(theta: NDArray[Any]) -> NDArray[Any]:
     """θ_i − θ_j for i < j, shape (..., N(N−1)/2)."""
     first, second = np.triu_indices(theta.shape[-1], 1)
     return np.asarray(theta[..., first] - theta[..., second])
 
 
-def _product(factors: NDArray[np.generic]) -> Complex:
+def _product(factors: NDArray[Any]) -> Complex:
     return np.asarray(factors.prod(axis=-1))
 
 
@@ -115,8 +116,8 @@ def _one_by_one(tau: float, windings: NDArray[np.int_]) -> Callable[[Complex], C
 def _by_determinants(tau: float, most: int) -> Callable[[Complex], Complex]:
     """The same sum for many windings.
 
-    The product over i < j is a Vandermonde determinant, so for a fixed phase φ conjugate to Σ m the sum factorises
-    into an N×N determinant of one-dimensional sums; a finite Fourier average over φ picks Σ m = 0.
+    The product over i < j is a Vandermonde determinant, so for a fixed phase φ conjugate to Σ m the sum
+    factorises into an N×N determinant of one-dimensional sums; a finite Fourier average over φ picks Σ m = 0.
     """
 
     def numerator(theta: Complex) -> Complex:

@@ -44,8 +44,8 @@ def link_from_plaquette(
     ----------
     group : SU
     weight : str, Expr or ClassFunction
-        w(U), for example ``"exp(beta*(L + conj(L))/6 + gamma*chi(1,1)/8)"`` or a function of the eigenphases such as
-        ``"exp(b*(cos(theta_1) + cos(theta_2) + cos(theta_3)))"``.
+        w(U), for example ``"exp(beta*(L + conj(L))/6 + gamma*chi(1,1)/8)"`` or a function of the
+        eigenphases such as ``"exp(b*(cos(theta_1) + cos(theta_2) + cos(theta_3)))"``.
     plaquettes : int
         N_t.
 
@@ -73,8 +73,8 @@ def site_from(group: SU, expression: str | Expr | ClassFunction) -> WrittenSite:
     ----------
     group : SU
     expression : str, Expr or ClassFunction
-        Polynomials in L, conj(L), tr(P, n) and chi(labels) stay exact; everything else is transformed on the torus of
-        eigenphases with a stated error.
+        Polynomials in L, conj(L), tr(P, n) and chi(labels) stay exact; everything else is transformed on
+        the torus of eigenphases with a stated error.
 
     Raises
     ------
@@ -112,7 +112,7 @@ class WrittenPlaquette(PlaquetteLink):
         return {"kind": self.kind, "weight": written_text(self.weight), "plaquettes": self.plaquettes}
 
     def exponent(self) -> ClassFunction | None:
-        """The argument of the exponential, if the weight is one and the argument is a finite class function."""
+        """The argument of the exponential, if the weight is one with a finite class function inside."""
         inside = self.weight.expression
         return self.weight.part(inside.args[0]).finite if isinstance(inside, sympy.exp) else None
 
@@ -183,7 +183,7 @@ class WrittenSite(TorusSite):
         return super().coefficients_at(irreps, values)
 
     def norm_bound(self, values: Values) -> NDArray[Any]:
-        """Σ|w_c|d_c of a finite class function; else the largest |W| on a grid with a margin, an *estimate*."""
+        """Σ|w_c|d_c if finite; else the largest |W| on a grid with a margin, an *estimate*."""
         if self.finite:
             return Site.norm_bound(self, values)
         self._refuse_singularities(values)

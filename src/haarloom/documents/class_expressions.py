@@ -1,8 +1,9 @@
-"""Class functions of P from text: the grammar of expressions with four words more.
+"""Class functions of P from text: the grammar of expressions with the words for class functions.
 
 ``L`` is tr P; ``L*`` or ``conj(L)`` is tr P†; ``tr(P, n)`` is tr Pⁿ; ``chi(p, q, …)`` is the character
 with these Dynkin labels. The result is an ordinary SymPy expression in the spellings of
-:mod:`haarloom.algebra.expressions`, which turns it into a class function.
+:mod:`haarloom.algebra.words`; :func:`haarloom.algebra.expressions.class_function_from` turns it into a
+class function.
 """
 
 from __future__ import annotations
@@ -11,6 +12,7 @@ from collections.abc import Iterable
 
 import sympy
 
+from haarloom.algebra.words import P, chi, tr
 from haarloom.documents.expressions import symbol_reader
 from haarloom.documents.grammar import CallReader, Reader
 from haarloom.documents.tokens import Token
@@ -19,9 +21,6 @@ __all__ = ["parse_class_expression"]
 
 LOOP = sympy.Symbol("L")
 LOOP_CONJUGATE = sympy.Symbol("L^*")
-_P = sympy.Symbol("P")
-_TRACE = sympy.Function("tr")
-_CHARACTER = sympy.Function("chi")
 _HIGHEST = 1000
 
 
@@ -77,42 +76,19 @@ def _star_belongs_to_loop(reader: Reader) -> bool:
 
 
 def _trace(reader: Reader, token: Token, arguments: list[sympy.Expr]) -> sympy.Expr:
-    if len(arguments) != 2 or arguments[0] != _P or not _is_whole(arguments[1]):
+    if len(arguments) != 2 or arguments[0] != P or not _is_whole(arguments[1]):
         raise reader.refuse(token, f"tr takes P and a whole number up to ±{_HIGHEST}, as in tr(P, 2)")
-    return _TRACE(_P, arguments[1])
+    return tr(P, arguments[1])
 
 
 def _character(reader: Reader, token: Token, arguments: list[sympy.Expr]) -> sympy.Expr:
     if not all(_is_whole(label) and label >= 0 for label in arguments):
         raise reader.refuse(token, f"chi takes Dynkin labels, whole numbers from 0 to {_HIGHEST}: chi(1, 1)")
-    return _CHARACTER(*arguments)
+    return chi(*arguments)
 
 
 def _is_whole(value: sympy.Expr) -> bool:
     return bool(value.is_Integer and abs(value) <= _HIGHEST)
 
 
-def _conjugate(reader: Reader, token: Token, arguments: list[sympy.Expr]) -> sympy.Expr:
-    if len(arguments) != 1:
-        raise reader.refuse(token, f"{token.text!r} takes one argument, not {len(arguments)}")
-    return sympy.conjugate(arguments[0]).replace(
-        lambda part: isinstance(part, sympy.conjugate), lambda part: _conjugate_word(part.args[0])
-    )
-
-
-_WORDS: dict[str, CallReader] = {
-    "tr": _trace,
-    "chi": _character,
-    "conj": _conjugate,
-    "conjugate": _conjugate,
-}
-
-
-def _conjugate_word(word: sympy.Expr) -> sympy.Expr:
-    if word in (LOOP, LOOP_CONJUGATE):
-        return LOOP_CONJUGATE if word == LOOP else LOOP
-    if isinstance(word, _CHARACTER):  # conjugation reverses the labels
-        return _CHARACTER(*reversed(word.args))
-    if isinstance(word, _TRACE):  # tr(P†)^n = tr P^{-n}
-        return _TRACE(_P, -word.args[1])
-    return sympy.conjugate(word)
+_WORDS: dict[str, CallReader] = {"tr": _trace, "chi": _character}

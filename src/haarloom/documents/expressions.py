@@ -9,8 +9,8 @@
     atom     = number | name | name "(" sum { "," sum } ")" | "(" sum ")"
 
 Numbers are exact rationals, decimals included: ``0.3`` is 3/10. Known words are the constants
-``pi``, ``I``, ``E`` and the functions ``sqrt exp log sin cos sinh cosh conj``; any other name is a
-plain symbol.
+``pi``, ``I``, ``E`` and the functions ``sqrt exp log sin cos sinh cosh conj re im abs``; any
+other name is a plain symbol.
 """
 
 from __future__ import annotations

@@ -34,6 +34,10 @@ FUNCTIONS: dict[str, Callable[[sympy.Expr], sympy.Expr]] = {
     "cosh": sympy.cosh,
     "conj": sympy.conjugate,
     "conjugate": sympy.conjugate,
+    "re": sympy.re,
+    "im": sympy.im,
+    "abs": sympy.Abs,
+    "Abs": sympy.Abs,
 }
 
 SymbolReader = Callable[["Reader", Token], sympy.Expr]

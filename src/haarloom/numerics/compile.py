@@ -80,6 +80,13 @@ class CompiledTransfer:
             return np.asarray(result)
         return np.asarray(root @ site @ root)
 
+    def unsymmetric(self, **values: Any) -> NDArray[Any]:
+        """K W at the given values, shape broadcast(values) + (n, n): similar to T, and free of matrix roots."""
+        checked = checked_values(self.model, values)
+        kernel = self.link(checked)
+        site = self.site(checked)
+        return np.asarray(kernel[..., :, None] * site if self.model.link.diagonal else kernel @ site)
+
     def link(self, values: Mapping[str, Any]) -> NDArray[Any]:
         """k_r, shape broadcast(link values) + (n,); the kernel, (n, n) last, for a coupling that is not diagonal."""
         link = self.model.link

@@ -16,7 +16,7 @@ from haarloom.numerics.verdicts import verdicts_from
 if TYPE_CHECKING:
     from haarloom.ring.model import RingModel
 
-__all__ = ["Plane", "PlaneLevels", "dense_points", "solve_plane"]
+__all__ = ["Plane", "PlaneLevels", "dense_points", "fitted", "solve_plane", "suffices"]
 
 NODES = 16
 """Most nodes along an axis from which subspaces are interpolated."""
@@ -95,15 +95,21 @@ class Plane:
 
 @dataclass(frozen=True, eq=False)
 class PlaneLevels:
-    """Leading eigenvalues, radii and verdicts at every point: shapes (R, C, L), (R, C, L), (R, C, L − 1).
+    """Leading levels at every point.
 
-    ``dense`` is the number of points that were not solved from a warm start.
+    Attributes
+    ----------
+    values, radius, verdicts
+        Eigenvalues, radii and verdicts, shapes (R, C, L), (R, C, L), (R, C, L − 1).
+    cutoff, dense
+        K, and whether the point was solved without a warm start, shape (R, C).
     """
 
     values: NDArray[np.complex128]
     radius: NDArray[np.float64]
     verdicts: NDArray[np.str_]
-    dense: int
+    cutoff: NDArray[np.int32]
+    dense: NDArray[np.bool_]
 
 
 def _constant(numbers: NDArray[np.float64]) -> NDArray[np.float64]:
@@ -122,7 +128,7 @@ def solve_plane(plane: Plane) -> PlaneLevels:
     if rows * columns <= FEW_POINTS:
         first, second = np.repeat(plane.axes[0], columns), np.tile(plane.axes[1], rows)
         found = (part.reshape(rows, columns, -1) for part in dense_points(plane, first, second))
-        return PlaneLevels(*found, rows * columns)
+        return PlaneLevels(*found, *_marks(plane, np.ones((rows, columns), dtype=bool)))
     warm = levels_from_frames(plane)
     if isinstance(warm, tuple):
         values, radius, verdicts = warm
@@ -132,17 +138,44 @@ def solve_plane(plane: Plane) -> PlaneLevels:
             if len(places[0]):
                 found = dense_points(plane, plane.axes[0][places[0]], plane.axes[1][places[1]])
                 values[places], radius[places], verdicts[places] = found
-            return PlaneLevels(values, radius, verdicts, int(bad.sum()))
-    return _joined(plane, [solve_plane(half) for half in plane.halves(warm if isinstance(warm, int) else None)])
+            return PlaneLevels(values, radius, verdicts, *_marks(plane, bad))
+    halves = plane.halves(warm if isinstance(warm, int) else None)
+    return _joined(plane, [solve_plane(fitted(half, half.cutoff)) for half in halves])
+
+
+def fitted(plane: Plane, largest: int) -> Plane:
+    """The plane on the smallest basis, up to a largest one, that suffices at nine of its points.
+
+    The truncation error there is a quarter of the tolerance at most.
+    """
+    rows, columns = (np.unique(axis[[0, len(axis) // 2, -1]]) for axis in plane.axes)
+    first, second = (grid.reshape(-1) for grid in np.meshgrid(rows, columns, indexing="ij"))
+    cutoff = largest
+    while cutoff > 1 and suffices(replace(plane, cutoff=cutoff - 1), first, second):
+        cutoff -= 1
+    return replace(plane, cutoff=cutoff)
+
+
+def suffices(plane: Plane, first: NDArray[np.float64], second: NDArray[np.float64]) -> bool:
+    """Whether the truncation error is a quarter of the tolerance at most, at a list of points."""
+    if plane.model.group.count_irreps(plane.cutoff) <= plane.levels:
+        return False
+    batch = plane.batch(first, second)
+    values, right, left = batch.solved()
+    quiet = replace(batch, noise=0.0 * batch.noise)
+    radius = batch_errors(quiet, complete_levels(batch, values, right, left), plane.levels)
+    strict = replace(plane, tolerance=plane.tolerance / 4)
+    return bool(strict.accepts(values[:, : plane.levels].astype(complex), radius).all())
 
 
 def _joined(plane: Plane, parts: list[PlaneLevels]) -> PlaneLevels:
     axis = 0 if parts[0].values.shape[0] < plane.shape[0] else 1
-    arrays = (
-        np.concatenate([getattr(part, name) for part in parts], axis=axis)
-        for name in ("values", "radius", "verdicts")
-    )
-    return PlaneLevels(*arrays, sum(part.dense for part in parts))
+    names = ("values", "radius", "verdicts", "cutoff", "dense")
+    return PlaneLevels(*(np.concatenate([getattr(part, name) for part in parts], axis=axis) for name in names))
+
+
+def _marks(plane: Plane, dense: NDArray[np.bool_]) -> tuple[NDArray[np.int32], NDArray[np.bool_]]:
+    return np.full(plane.shape, plane.cutoff, dtype=np.int32), dense
 
 
 def dense_points(

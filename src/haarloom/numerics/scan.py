@@ -33,7 +33,7 @@ POOL_SECONDS = 3.0
 SAVE_SECONDS = 5.0
 """Shortest time between two writes of the result file."""
 
-FIRST_ROWS = 8
+FIRST_ROWS = 32
 """Rows solved in this process, to measure what a row costs."""
 
 BREAKDOWNS = 3

@@ -9,11 +9,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from haarloom.exceptions import HaarloomError
-from haarloom.numerics.batch import batch_errors, complete_levels, truncate_batch
 from haarloom.numerics.bounds import mass_errors
 from haarloom.numerics.cutoff import closing_cutoff
 from haarloom.numerics.ordering import masses_from
-from haarloom.numerics.plane import Plane, PlaneLevels, dense_points, solve_plane
+from haarloom.numerics.plane import Plane, PlaneLevels, dense_points, solve_plane, suffices
 from haarloom.numerics.scan_grid import Chunk, ScanGrid
 from haarloom.numerics.spectrum import spectrum
 from haarloom.numerics.threads import single_threaded
@@ -60,7 +59,8 @@ def solve_chunk(grid: ScanGrid, chunk: Chunk) -> ChunkResult:
         found = solve_plane(plane)
     except HaarloomError:
         return _one_by_one(grid, chunk, plane)
-    return _packed(chunk, found, _raised(plane, found))
+    _raise_cutoffs(plane, found)
+    return _packed(chunk, found)
 
 
 def _plane(grid: ScanGrid, chunk: Chunk) -> Plane:
@@ -86,40 +86,35 @@ def _plane(grid: ScanGrid, chunk: Chunk) -> Plane:
 
 
 def _cutoff(plane: Plane) -> int:
-    """Smallest K whose truncation error is a quarter of the tolerance at nine points of the plane."""
-    rows, columns = (np.unique(axis[[0, len(axis) // 2, -1]]) for axis in plane.axes)
-    first, second = (grid.reshape(-1) for grid in np.meshgrid(rows, columns, indexing="ij"))
+    """Smallest K that suffices at the corners and in the middle of the plane."""
+    rows, columns = (axis[[0, len(axis) // 2, -1]] for axis in plane.axes)
+    first, second = rows[[0, 0, 1, 2, 2]], columns[[0, 2, 1, 0, 2]]
     values = plane.values(first, second)
-    corners = [{name: array[min(i, len(array) - 1)] for name, array in values.items()} for i in range(len(first))]
-    cutoff = min(closing_cutoff(plane.model, plane.levels, corner) for corner in corners)
+    places = [{name: array[min(i, len(array) - 1)] for name, array in values.items()} for i in range(5)]
+    cutoff = min(closing_cutoff(plane.model, plane.levels, place) for place in places)
     while plane.model.group.count_irreps(cutoff) <= LARGEST_PLANE:
-        batch = truncate_batch(plane.model, cutoff, values)
-        levels, right, left = batch.solved()
-        quiet = replace(batch, noise=0.0 * batch.noise)
-        radius = batch_errors(quiet, complete_levels(batch, levels, right, left), plane.levels)
-        if replace(plane, tolerance=plane.tolerance / 4).accepts(levels[:, : plane.levels], radius).all():
+        if suffices(replace(plane, cutoff=cutoff), first, second):
             return cutoff
         cutoff += 1
     return cutoff
 
 
-def _raised(plane: Plane, found: PlaneLevels) -> NDArray[np.int32]:
-    """Solve points that miss the tolerance again on larger bases; the cutoff of every point."""
-    used = np.full(found.radius.shape[:2], plane.cutoff, dtype=np.int32)
-    for higher in (plane.cutoff + 1, plane.cutoff + 3):
+def _raise_cutoffs(plane: Plane, found: PlaneLevels) -> None:
+    """Solve points that miss the tolerance again on larger bases."""
+    for higher in (1, 3):
         places = np.nonzero(~plane.accepts(found.values, found.radius))
         if not len(places[0]):
-            break
+            return
         first, second = (axis[place] for axis, place in zip(plane.axes, places, strict=True))
-        values, radius, verdicts = dense_points(replace(plane, cutoff=higher), first, second)
+        larger = replace(plane, cutoff=plane.cutoff + higher)
+        values, radius, verdicts = dense_points(larger, first, second)
         better = radius.max(axis=1) < found.radius[places].max(axis=1)
         chosen = tuple(place[better] for place in places)
         found.values[chosen], found.radius[chosen] = values[better], radius[better]
-        found.verdicts[chosen], used[chosen] = verdicts[better], higher
-    return used
+        found.verdicts[chosen], found.cutoff[chosen] = verdicts[better], larger.cutoff
 
 
-def _packed(chunk: Chunk, found: PlaneLevels, cutoff: NDArray[np.int32]) -> ChunkResult:
+def _packed(chunk: Chunk, found: PlaneLevels) -> ChunkResult:
     codes = np.searchsorted(np.sort(VERDICTS), found.verdicts)
     return ChunkResult(
         chunk,
@@ -127,7 +122,7 @@ def _packed(chunk: Chunk, found: PlaneLevels, cutoff: NDArray[np.int32]) -> Chun
         mass_errors(found.values, found.radius),
         np.argsort(VERDICTS)[codes].astype(np.int8),
         found.values[:, :, 0],
-        cutoff,
+        found.cutoff,
     )
 
 

@@ -18,9 +18,11 @@ __all__ = [
     "Claim",
     "ElementClaim",
     "ExpansionClaim",
+    "KernelClaim",
     "LinkFactorClaim",
     "OverlapClaim",
     "ProductClaim",
+    "RowClaim",
     "SelectionClaim",
     "SiteElementClaim",
 ]
@@ -89,6 +91,25 @@ class ElementClaim:
     value: sympy.Expr
 
 
+@dataclass(frozen=True)
+class KernelClaim:
+    """k_rq = ∫dP ∫dP′ χ_r(P)* K(P, P′) χ_q(P′) equals ``value``, for a link that mixes irreps."""
+
+    bra: Irrep
+    middle: Irrep
+    value: sympy.Expr
+
+
+@dataclass(frozen=True)
+class RowClaim:
+    """(K W)_rs = Σ_q k_rq ⟨q|W|s⟩ over the irreps ``through`` of the basis equals ``value``."""
+
+    bra: Irrep
+    through: tuple[Irrep, ...]
+    ket: Irrep
+    value: sympy.Expr
+
+
 Claim = (
     ExpansionClaim
     | SelectionClaim
@@ -97,4 +118,6 @@ Claim = (
     | SiteElementClaim
     | LinkFactorClaim
     | ElementClaim
+    | KernelClaim
+    | RowClaim
 )

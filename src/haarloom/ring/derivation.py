@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -12,9 +13,11 @@ from haarloom.ring.claims import (
     Claim,
     ElementClaim,
     ExpansionClaim,
+    KernelClaim,
     LinkFactorClaim,
     OverlapClaim,
     ProductClaim,
+    RowClaim,
     SelectionClaim,
     SiteElementClaim,
 )
@@ -28,6 +31,10 @@ if TYPE_CHECKING:
     from haarloom.ring.replay import Verification
 
 __all__ = ["Derivation", "Step", "derive"]
+
+EXPAND = "Expand the site weight in characters"
+DECOMPOSE = "Decompose each product that contributes"
+PROJECT = "Project by orthogonality"
 
 
 @dataclass(frozen=True)
@@ -69,7 +76,7 @@ class Derivation:
     def element(self) -> sympy.Expr:
         """The value that the last step states."""
         final = self.steps[-1].claims[-1]
-        assert isinstance(final, ElementClaim)
+        assert isinstance(final, ElementClaim | RowClaim)
         return final.value
 
     def verify(self, seed: int = 20, tolerance: float = 1e-12) -> Verification:
@@ -107,17 +114,46 @@ class Derivation:
         return f"Derivation(⟨{self.bra.name}|T|{self.ket.name}⟩ = {self.element}; {len(self.steps)} steps)"
 
 
-def derive(model: RingModel, bra: Irrep, ket: Irrep) -> Derivation:
-    """The derivation of ⟨bra|T|ket⟩ for a diagonal link weight."""
+def derive(model: RingModel, basis: tuple[Irrep, ...], bra: Irrep, ket: Irrep) -> Derivation:
+    """The derivation of ⟨bra|T|ket⟩; ``basis`` matters to a link that mixes irreps alone."""
+    if not model.link.diagonal:
+        return _derive_row(model, basis, bra, ket)
     joined = contributions(model.site, bra, ket)
-    site_value = sympy.Add(*(count * model.site.coefficient(c) for c, count in joined.items()))
+    site_value = _site_value(model.site, joined)
     steps = (
-        Step("Expand the site weight in characters", (_expansion(model.site, tuple(joined)),)),
-        Step("Decompose each product that contributes", _products(bra, ket, tuple(joined))),
-        Step("Project by orthogonality", _projections(bra, ket, joined, site_value)),
+        Step(EXPAND, (_expansion(model.site, tuple(joined)),)),
+        Step(DECOMPOSE, _products(bra, ket, tuple(joined))),
+        Step(PROJECT, _projections(bra, ket, joined, site_value)),
         Step("Attach the link factors", _dressing(model, bra, ket, site_value)),
     )
     return Derivation(model, bra, ket, steps)
+
+
+def _derive_row(model: RingModel, basis: tuple[Irrep, ...], bra: Irrep, ket: Irrep) -> Derivation:
+    """(K W)_rs: each irrep q that the link joins to the bra, and ⟨q|W|s⟩ by the same road."""
+    row = model.link.kernel(basis)[basis.index(bra), :]
+    kernel = {q: k for q, k in zip(basis, row, strict=True) if k != 0}
+    joined = {q: contributions(model.site, q, ket) for q in kernel}
+    values = {q: _site_value(model.site, found) for q, found in joined.items()}
+    entering = tuple({c: None for found in joined.values() for c in found})
+    total = sympy.Add(*(kernel[q] * values[q] for q in kernel))
+    steps = (
+        Step(EXPAND, (_expansion(model.site, entering),)),
+        Step(DECOMPOSE, _each(_products(q, ket, tuple(found)) for q, found in joined.items())),
+        Step(PROJECT, _each(_projections(q, ket, found, values[q]) for q, found in joined.items())),
+        Step("Take the row of the link kernel", tuple(KernelClaim(bra, q, k) for q, k in kernel.items())),
+        Step("Sum over the irreps in between", (RowClaim(bra, tuple(kernel), ket, total),)),
+    )
+    return Derivation(model, bra, ket, steps)
+
+
+def _site_value(site: SiteWeight, joined: Mapping[Irrep, int]) -> sympy.Expr:
+    return sympy.Add(*(count * site.coefficient(c) for c, count in joined.items()))
+
+
+def _each(groups: Iterable[tuple[Claim, ...]]) -> tuple[Claim, ...]:
+    """One tuple without repetition: the same product serves several irreps in between."""
+    return tuple(dict.fromkeys(claim for group in groups for claim in group))
 
 
 def _expansion(site: SiteWeight, joined: tuple[Irrep, ...]) -> ExpansionClaim:

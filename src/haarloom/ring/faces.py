@@ -11,9 +11,11 @@ import sympy
 from haarloom.ring.claims import (
     ElementClaim,
     ExpansionClaim,
+    KernelClaim,
     LinkFactorClaim,
     OverlapClaim,
     ProductClaim,
+    RowClaim,
     SelectionClaim,
     SiteElementClaim,
 )
@@ -118,6 +120,21 @@ def _(claim: ElementClaim) -> str:
     return rf"{_bracket(claim.bra, 'T', claim.ket)} = {dressed} = {sympy.latex(claim.value)}"
 
 
+@claim_latex.register
+def _(claim: KernelClaim) -> str:
+    return rf"{_kernel_name(claim.bra, claim.middle)} = {sympy.latex(claim.value)}"
+
+
+@claim_latex.register
+def _(claim: RowClaim) -> str:
+    terms = _sum(_kernel_name(claim.bra, q) + r"\," + _bracket(q, "W", claim.ket) for q in claim.through)
+    return rf"{_bracket(claim.bra, 'KW', claim.ket)} = {terms} = {sympy.latex(claim.value)}"
+
+
+def _kernel_name(row: Irrep, column: Irrep) -> str:
+    return f"k_{{{row.latex()},{column.latex()}}}"
+
+
 def derivation_latex(derivation: Derivation) -> str:
     """One ``aligned`` block: a line of text for each step, then its statements."""
     lines = []
@@ -148,13 +165,16 @@ def matrix_latex(transfer: TransferMatrix) -> str:
     if cut:
         rows.append(" & ".join([r"\vdots"] * size + [r"\ddots"]))
     body = r" \\ ".join(rows)
-    return rf"$\displaystyle T = \begin{{pmatrix}} {body} \end{{pmatrix}}$"
+    name = "T" if transfer.model.link.diagonal else "KW"
+    return rf"$\displaystyle {name} = \begin{{pmatrix}} {body} \end{{pmatrix}}$"
 
 
 def model_latex(model: RingModel) -> str:
     """T, the link weight and the site weight in one display."""
+    element = r"\sqrt{k_r}\,\langle r|W|s\rangle\,\sqrt{k_s}"
+    transfer = f"T_{{rs}} = {element}" if model.link.diagonal else r"T = K^{1/2}\,W K^{1/2} \sim K W"
     return (
-        r"$\displaystyle \begin{aligned} &T_{rs} = \sqrt{k_r}\,\langle r|W|s\rangle\,\sqrt{k_s},"
+        rf"$\displaystyle \begin{{aligned}} &{transfer},"
         rf"\qquad \mathrm{{SU}}({model.group.n})\\ "
         rf"&{model.link.latex()}\\ &{model.site.latex()} \end{{aligned}}$"
     )

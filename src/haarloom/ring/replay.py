@@ -16,13 +16,15 @@ from haarloom.ring.claims import (
     Claim,
     ElementClaim,
     ExpansionClaim,
+    KernelClaim,
     LinkFactorClaim,
     OverlapClaim,
     ProductClaim,
+    RowClaim,
     SelectionClaim,
     SiteElementClaim,
 )
-from haarloom.ring.torus_function import TorusFunction
+from haarloom.ring.torus_function import TorusFunction, double_overlap
 from haarloom.torus.characters import character, weyl_ratio
 
 if TYPE_CHECKING:
@@ -32,13 +34,13 @@ if TYPE_CHECKING:
 
 __all__ = ["ReplayedStep", "Verification", "replay"]
 
-VISIBLE = 0.03
+VISIBLE = 0.02
 """Link coefficients are checked at couplings where they are at least this large, if there are any."""
 
 SAMPLES = 7
 """Random torus points per pointwise statement: a false finite identity survives none of them."""
 
-LINK_SCALES = (1, 1 / 64, 1 / 16, 1 / 4, 4, 16)
+LINK_SCALES = (1, *(2.0**power for power in (-6, -4, -3, -2, -1, 1, 2, 3, 4)))
 """Factors on the link parameters, to find couplings where the coefficients at hand can be seen."""
 
 
@@ -116,6 +118,15 @@ class Torus:
         ratio = self.plaquette.coefficient(irrep) / irrep.dimension / trivial
         return complex(ratio**self.model.link.plaquettes)
 
+    def kernel_element(self, bra: Irrep, ket: Irrep) -> complex:
+        """∫dP ∫dP′ χ_bra(P)* K(P, P′) χ_ket(P′)."""
+        density = getattr(self.model.link, "kernel_density_at", None)
+        if density is None:
+            raise NotReplayable(
+                "link elements that were given as they are, with no kernel K(P, P′) behind them"
+            )
+        return double_overlap(self.model.group, lambda a, b: density(a, b, self.values), bra, ket)
+
     def number(self, expression: sympy.Expr) -> complex:
         """A stated expression at the random values."""
         numbers = {symbol: self.values[symbol.name] for symbol in expression.free_symbols}
@@ -149,6 +160,8 @@ def _random_torus(derivation: Derivation, rng: np.random.Generator) -> Torus:
 
 def _smallest_coefficient(torus: Torus, derivation: Derivation) -> float:
     link = torus.model.link
+    if not link.diagonal:
+        return VISIBLE
     ends = (abs(torus.number(link.coefficient(irrep))) for irrep in (derivation.bra, derivation.ket))
     return max(min(ends), 1e-300)
 
@@ -231,6 +244,19 @@ def _(claim: ElementClaim, torus: Torus) -> float:
     site = torus.site.matrix_element(claim.bra, claim.ket)
     along = stated * np.conj(cmath.sqrt(bra) * site * cmath.sqrt(ket))
     return max(_distance(stated**2, bra * site**2 * ket), _distance(abs(along), along))
+
+
+@residual.register
+def _(claim: KernelClaim, torus: Torus) -> float:
+    return _distance(torus.number(claim.value), torus.kernel_element(claim.bra, claim.middle))
+
+
+@residual.register
+def _(claim: RowClaim, torus: Torus) -> float:
+    found = sum(
+        torus.kernel_element(claim.bra, q) * torus.site.matrix_element(q, claim.ket) for q in claim.through
+    )
+    return _distance(torus.number(claim.value), found)
 
 
 def _character_function(torus: Torus, irrep: Irrep) -> TorusFunction:

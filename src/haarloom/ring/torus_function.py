@@ -16,13 +16,16 @@ if TYPE_CHECKING:
     from haarloom.algebra.group import SU
     from haarloom.algebra.irrep import Irrep
 
-__all__ = ["TorusFunction"]
+__all__ = ["TorusFunction", "double_overlap"]
 
 SETTLED = 1e-13
 """Largest change on refining the grid that counts as converged, against ∫|f| and the two dimensions."""
 
 AFFORDABLE = 250_000
 """Largest grid, in tuples looked through, on which a function of unknown reach is sampled."""
+
+AFFORDABLE_PAIRS = 4_000
+"""The same for a kernel of two loops, which is sampled on pairs."""
 
 
 @dataclass(frozen=True)
@@ -83,3 +86,26 @@ class TorusFunction:
         """∫dP |f|: what rounding errors are measured against."""
         weights = alcove_grid(self.group, points)[1]
         return max(float(np.sum(np.abs(self._sampled(points)) * weights)), 1e-300)
+
+
+def double_overlap(
+    group: SU, kernel: Callable[[np.ndarray, np.ndarray], Any], bra: Irrep, ket: Irrep
+) -> complex:
+    """∫dP ∫dP′ χ_bra(P)* K(P, P′) χ_ket(P′), the grid refined until the result settles.
+
+    ``kernel`` takes two arrays of eigenphases that broadcast, shapes (M, 1, N) and (1, M, N).
+    """
+    points = sum(bra.labels) + sum(ket.labels) + 2 * group.rank + 9
+    before = None
+    while alcove_size(group, points) <= AFFORDABLE_PAIRS:
+        angles, weights = alcove_grid(group, points)
+        left, right = np.conj(character(bra, angles)) * weights, character(ket, angles) * weights
+        values = np.asarray(kernel(angles[:, None, :], angles[None, :, :]))
+        value, scale = complex(left @ values @ right), float(weights @ np.abs(values) @ weights)
+        if before is not None and abs(value - before) <= SETTLED * bra.dimension * ket.dimension * scale:
+            return value
+        points, before = points + points // 2, value
+    raise ConvergenceError(
+        f"⟨{bra.name}|K|{ket.name}⟩ on {group} does not settle on {points} points an angle, "
+        "the largest grid that fits: take smaller irreps, a smaller N or a smoother weight."
+    )

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import defaultdict
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from functools import cached_property
@@ -22,6 +23,8 @@ if TYPE_CHECKING:
     from haarloom.ring.derivation import Derivation
     from haarloom.ring.model import RingModel
 
+Elements = dict[tuple[int, int], sympy.Expr]
+
 __all__ = ["TransferMatrix", "build_transfer_matrix"]
 
 
@@ -30,6 +33,9 @@ class TransferMatrix:
     """T_rs = √k_r ⟨r|W|s⟩ √k_s, exact, on the irreps of ``basis``.
 
     Index it with two irreps, names or label tuples: ``T["3", "3bar"]``, ``T[(1, 0), (0, 1)]``.
+
+    A link that mixes irreps has no square root in closed form. Its matrix is K W, (K W)_rs = Σ_q k_rq ⟨q|W|s⟩
+    with q in the basis: similar to K^{1/2} W K^{1/2} on the same basis, so with the same eigenvalues.
     """
 
     model: RingModel
@@ -61,16 +67,17 @@ class TransferMatrix:
         row, column = self._irreps((bra, ket))
         position_in(self.basis, row)
         position_in(self.basis, column)
-        return derive(self.model, row, column)
+        return derive(self.model, self.basis, row, column)
 
     def numeric(self, **values: Any) -> np.ndarray:
-        """T as numbers, shape broadcast(values) + (n, n); float64 where all values are real.
+        """``matrix`` as numbers, shape broadcast(values) + (n, n); float64 where all values are real.
 
         See :func:`haarloom.numerics.compile.compile_transfer`, which is compiled once and kept.
         """
         from haarloom.numerics.compile import compile_transfer
 
-        return compile_transfer(self.model, self.cutoff)(**values)
+        compiled = compile_transfer(self.model, self.cutoff)
+        return compiled(**values) if self.model.link.diagonal else compiled.unsymmetric(**values)
 
     def pattern(self) -> tuple[tuple[bool, ...], ...]:
         """True where an element is not identically zero."""
@@ -106,11 +113,26 @@ class TransferMatrix:
 
 
 def build_transfer_matrix(model: RingModel, basis: tuple[Irrep, ...]) -> TransferMatrix:
-    """Dress the site elements with the square roots of the link coefficients."""
-    roots = [positive_root(model.link.coefficient(irrep)) for irrep in basis]
-    elements = {
-        (row, column): roots[row] * element * roots[column]
-        for (row, column), element in site_elements(model.site, basis).items()
-    }
+    """Join the site elements with the link: between roots, or below its rows if it mixes irreps."""
+    join = _between_roots if model.link.diagonal else _below_rows
+    elements = join(model, basis, site_elements(model.site, basis))
     kept = {place: element for place, element in elements.items() if element != 0}
     return TransferMatrix(model, basis, MappingProxyType(kept))
+
+
+def _between_roots(model: RingModel, basis: tuple[Irrep, ...], site: Elements) -> Elements:
+    """√k_r ⟨r|W|s⟩ √k_s."""
+    roots = [positive_root(model.link.coefficient(irrep)) for irrep in basis]
+    return {(row, column): roots[row] * element * roots[column] for (row, column), element in site.items()}
+
+
+def _below_rows(model: RingModel, basis: tuple[Irrep, ...], site: Elements) -> Elements:
+    """Σ_q k_rq ⟨q|W|s⟩."""
+    rows: dict[int, list[tuple[int, sympy.Expr]]] = defaultdict(list)
+    for (row, middle), k in model.link.kernel(basis).todok().items():
+        rows[int(middle)].append((int(row), k))
+    terms: dict[tuple[int, int], list[sympy.Expr]] = defaultdict(list)
+    for (middle, column), element in site.items():
+        for row, k in rows[middle]:
+            terms[row, column].append(k * element)
+    return {place: sympy.Add(*summands) for place, summands in terms.items()}
