@@ -14,8 +14,9 @@ import pytest
 import sympy
 
 import haarloom as hl
+from haarloom import actions
 from haarloom.actions.base import Link
-from haarloom.actions.registry import REGISTRY
+from haarloom.actions.registry import REGISTRY, build
 from haarloom.documents.model_document import (
     ModelDocument,
     from_document,
@@ -35,12 +36,23 @@ LINKS = [
     hl.wilson(G, sympy.sqrt(2) * sympy.Symbol("beta"), plaquettes=2),
     hl.loop_coupling(G, "1/7"),
     hl.link_from_coefficients(G, {"1": 1, "3": "k", "3bar": "k", "8": "k**2/2"}),
+    actions.mixed_wilson(G, {"3": "beta", "8": "beta/4"}, plaquettes=2),
+    actions.manton(G, "beta"),
+    actions.link_from_plaquette(G, "exp(beta*(L + L*)/6 + g*chi(1, 1))", plaquettes=3),
+    build(G, {"kind": "exponential loop coupling", "lam": "lam"}),
+    actions.bilinear_coupling(G, {("1", "1"): 1, ("3", "3"): "a", ("3bar", "3bar"): "a", ("8", "1"): "1/9"}),
+    build(G, {"kind": "stacked strips", "links": [hl.heat_kernel(G, "t"), hl.wilson(G, "beta")]}),
+    build(G, {"kind": "coupled link", "gauge": hl.heat_kernel(G, "t"), "coupling": hl.loop_coupling(G, "k")}),
 ]
 SITES = [
     hl.static_fermions(G, "z"),
     hl.static_fermions(G, z * sympy.exp(sympy.I * sympy.pi / 3), zbar="0.25", copies=4, irrep="6bar"),
     hl.static_bosons(G, "z", irrep="8"),
     hl.loop_field(G, {"8": "h", "3": "1/4", "3bar": "1/4"}),
+    actions.polynomial_potential(G, "b2", "b3", "1/2", volume=2),
+    actions.logarithmic_potential(G, "a", -1),
+    actions.haar_power(G, "1/3"),
+    actions.site_from(G, "1 + abs(L)^2/9 + h*(tr(P, 2) + conj(tr(P, 2)))"),
     hl.static_fermions(G, "z") * hl.loop_field(G, {"8": "h"}) * hl.static_fermions(G, "y", irrep="8"),
 ]
 
@@ -53,8 +65,10 @@ def content() -> dict[str, Any]:
     )
 
 
-@pytest.mark.parametrize("link", LINKS, ids=lambda link: link.kind)
-@pytest.mark.parametrize("site", SITES, ids=lambda site: site.kind)
+MODELS = [*((link, SITES[0]) for link in LINKS), *((LINKS[0], site) for site in SITES)]
+
+
+@pytest.mark.parametrize(("link", "site"), MODELS, ids=lambda weight: weight.kind)
 def test_saved_model_loads_as_itself(link: Any, site: Any, tmp_path: Path) -> None:
     model = hl.RingModel(link, site)
     path = save(model, tmp_path / "x.loom.json")
@@ -130,6 +144,10 @@ Change = Callable[[dict[str, Any]], Any]
         (lambda d: d["link"]["parameters"].update(u="1"), r"^link\.parameters: unknown key 'u'"),
         (lambda d: d["link"]["parameters"].pop("t"), r"^link\.parameters: the key 't' is missing"),
         (lambda d: d["link"].pop("parameters"), r"^link\.parameters: the key 't' is missing"),
+        (
+            lambda d: d.update(link={"kind": "stacked strips", "parameters": {"links": [{"kind": "x"}]}}),
+            r"^link\.parameters\.links\[0\]\.kind: unknown kind 'x'",
+        ),
         (lambda d: d.update(site={}), r"^site: \{\} given; a list"),
         (lambda d: d.update(site=[]), r"^site: no site weight given"),
         (lambda d: d["site"][0].update(kind="product"), r"^site\[0\]\.kind: unknown kind 'product'"),

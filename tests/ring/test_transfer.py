@@ -77,7 +77,7 @@ def test_wilson_elements_keep_their_bessel_coefficients():
     model = hl.RingModel(hl.wilson(G, "beta", plaquettes=2), hl.static_fermions(G, "z"))
     element = model.transfer_matrix(cutoff=1)["2", "1"]
     value = float(element.subs({"z": 0.5, "beta": 2}).evalf())
-    # w_j ∝ I_{2j+1}(β)/(d_j ...) : DLMF 10.32 with T_F = 1/2; ⟨2|W|1⟩ = z; two plaquettes: √k = w_1/w_0.
+    # exp[(β/2) tr U] = Σ_j (2j+1) w_j χ_j, w_j ∝ I_{2j+1}(β), DLMF 10.35; two plaquettes: √k = w_{1/2}/w_0.
     from scipy.special import iv
 
     assert value == pytest.approx(0.5 * iv(2, 2.0) / iv(1, 2.0), rel=1e-13)

@@ -39,6 +39,8 @@ def weight_entries(site: SiteWeight) -> list[dict[str, Any]]:
 
 
 def _entry(description: Mapping[str, Any]) -> dict[str, Any]:
+    from haarloom.actions.registry import REGISTRY
+
     facts = dict(description)
     kind = facts.pop("kind")
     known = sorted({*_kinds("link"), *_kinds("site")})
@@ -47,6 +49,9 @@ def _entry(description: Mapping[str, Any]) -> dict[str, Any]:
             f"a weight of kind {kind!r} cannot be written to a document: only built-in kinds can be read "
             f"back ({', '.join(known)}); keep the code that builds it instead"
         )
+    for name in _nested(REGISTRY[kind]) & set(facts):
+        inner = facts[name]
+        facts[name] = _entry(inner) if isinstance(inner, Mapping) else [_entry(part) for part in inner]
     return {"kind": kind, "parameters": facts}
 
 
@@ -81,11 +86,26 @@ def _weight(place: Node, group: SU, kinds: Mapping[str, Entry]) -> Any:
         parameters = place.child("parameters")
     required = [field.name for field in entry.fields if not field.optional]
     parameters.keys(required, [field.name for field in entry.fields if field.optional])
-    given = {name: _plain(node) for name, node in parameters.children()}
+    nested = _nested(entry)
+    given = {
+        name: _weights(node, group, kinds) if name in nested else _plain(node)
+        for name, node in parameters.children()
+    }
     try:
         return entry.constructor(group, **given)
     except HaarloomError as problem:
         _blamed(parameters, given, str(problem)).refuse(str(problem))
+
+
+def _nested(entry: Entry) -> set[str]:
+    """Fields that hold weights themselves, such as the strips of a stack."""
+    return {field.name for field in entry.fields if field.domain == "weights"}
+
+
+def _weights(place: Node, group: SU, kinds: Mapping[str, Entry]) -> Any:
+    if isinstance(place.value, list):
+        return [_weight(member, group, kinds) for member in place.items()]
+    return _weight(place, group, kinds)
 
 
 def _blamed(parameters: Node, given: Mapping[str, Any], complaint: str) -> Node:

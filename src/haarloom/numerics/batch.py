@@ -35,19 +35,22 @@ class TruncationBatch:
     ----------
     matrix
         T inside, shape (M, n, n).
-    upwards, downwards
-        C (M, m, n) and Bᵀ (M, m, n): what couples to the m irreps of the shell beyond.
+    whole, site
+        S W S Φ and W with all bras up to the shell beyond, shapes (M, bras, n).
+    root
+        S on all bras, shape (M, bras).
     norm, outside, rest, rim, noise
         ‖W‖; |k| beyond the basis; what couples beyond the shell; bound of ‖B‖ and ‖C‖; η. Shape (M,).
     mirror, phase
-        J on the basis, shape (n,); Φ, shape (M, n).
+        J on all bras, shape (bras,); Φ on them, shape (M, bras).
     mirrored
         Whether left vectors follow from right ones.
     """
 
     matrix: NDArray[Any]
-    upwards: NDArray[Any]
-    downwards: NDArray[Any]
+    whole: NDArray[Any]
+    site: NDArray[Any]
+    root: NDArray[np.float64]
     norm: NDArray[np.float64]
     outside: NDArray[np.float64]
     rest: NDArray[np.float64]
@@ -56,6 +59,23 @@ class TruncationBatch:
     mirror: NDArray[np.int64]
     phase: NDArray[Any]
     mirrored: bool
+
+    @property
+    def size(self) -> int:
+        """Number n of irreps inside."""
+        return self.matrix.shape[1]
+
+    @property
+    def upwards(self) -> NDArray[Any]:
+        """C, what couples to the irreps of the shell beyond, shape (M, m, n)."""
+        return self.whole[:, self.size :]
+
+    @cached_property
+    def downwards(self) -> NDArray[Any]:
+        """Bᵀ, shape (M, m, n): row o is √k_o Φ_o Σ_i W_{io} √k_i with W_{io} = W_{ō ī}."""
+        size = self.size
+        turned = self.site[:, self.mirror[size:], :][:, :, self.mirror[:size]]
+        return np.asarray((self.root * self.phase)[:, size:, None] * turned * self.root[:, None, :size])
 
     @property
     def real(self) -> bool:
@@ -106,9 +126,6 @@ def truncate_batch(model: RingModel, cutoff: int, values: Mapping[str, NDArray[A
     site = site.reshape(len(weights), pattern.outer_size, size)
     dressed = root[:, :, None] * site * (root * phase)[:, None, :size]
     mirror = conjugation(rank, outer)
-    # row o of Bᵀ: √k_o Φ_o Σ_i W_{i o} √k_i with W_{io} = W_{ō ī}
-    turned = site[:, mirror[size:], :][:, :, mirror[:size]]
-    beyond = (root * phase)[:, size:, None]
     matrix = np.broadcast_to(dressed[:, :size], (points, size, size))
     norm = _flat(model.site.norm_bound(values))
     noise = 8 * EPS * np.linalg.norm(matrix, axis=(1, 2)) + input_errors(
@@ -122,15 +139,16 @@ def truncate_batch(model: RingModel, cutoff: int, values: Mapping[str, NDArray[A
     ones = np.ones(points)
     return TruncationBatch(
         matrix=matrix,
-        upwards=dressed[:, size:],
-        downwards=beyond * turned * root[:, None, :size],
+        whole=dressed,
+        site=site,
+        root=root,
         norm=norm * ones,
         outside=outside * ones,
         rest=rest * ones,
         rim=(norm * edge * np.sqrt(outside) + rest) * ones,
         noise=noise * ones,
-        mirror=mirror[:size],
-        phase=phase[:, :size],
+        mirror=mirror,
+        phase=phase,
         mirrored=bool((np.abs(k[:, mirror] - k) <= 8 * EPS * np.abs(k)).all()),
     )
 

@@ -70,11 +70,13 @@ def levels_from_frames(
     Where the subspaces bend too much to be interpolated, the axis across which to halve the plane;
     None where levels do not group or T is not mirrored.
     """
-    counts = [_node_count(plane, axis) for axis in (0, 1)]
-    for axis, count in enumerate(counts):
+    counts = [1, 1]
+    for axis in (0, 1):
+        count = _node_count(plane, axis)
         if count is None:
             return axis
-    frames = _frames(plane, (counts[0] or 1, counts[1] or 1))
+        counts[axis] = count
+    frames = _frames(plane, (counts[0], counts[1]))
     if frames is None:
         return None
     rows, columns = plane.shape

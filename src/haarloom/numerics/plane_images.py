@@ -93,7 +93,7 @@ def _by_points(
         upright = np.swapaxes(vectors, 1, 2)
         inside, beyond = (np.swapaxes(matrix @ upright, 1, 2) for matrix in (batch.matrix, batch.upwards))
         margins = Margins(batch.norm * batch.outside, batch.rest, batch.rim, batch.noise)
-        dual = (batch.phase[:, None, :], mirror)
+        dual = (batch.phase[:, None, :size], mirror)
         yield PlanePart(part, vectors, inside, beyond, dual, margins, batch.hermitian, batch.real)
 
 
