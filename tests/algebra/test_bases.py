@@ -99,6 +99,7 @@ def test_real_characters_are_sums_of_cosines() -> None:
     assert not octet.has(sympy.exp, sympy.sin)
     odd = SU(3).loop - SU(3).loop.conjugate()
     assert not odd.in_eigenphases().has(sympy.exp, sympy.cos)
+    assert class_function_from(odd.in_eigenphases(), SU(3)) == odd
 
 
 def test_power_sums_are_traces_of_powers() -> None:

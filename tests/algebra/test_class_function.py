@@ -52,6 +52,12 @@ def test_conjugation_is_an_involution_and_multiplicative(f: ClassFunction) -> No
     assert (f * f).conjugate(real=True) == f.conjugate(real=True) ** 2
 
 
+def test_coefficients_are_conjugated_too() -> None:
+    assert (sympy.I * z * L).conjugate() == -sympy.I * sympy.conjugate(z) * LBAR
+    assert (sympy.I * z * L).conjugate(real=True) == -sympy.I * z * LBAR
+    assert ((1 + 2 * sympy.I) * L).inner(L) == 1 - 2 * sympy.I
+
+
 @given(st.data())
 def test_inner_product_is_the_haar_integral_of_the_product(data: st.DataObject) -> None:
     group = data.draw(groups(largest=4))

@@ -7,9 +7,11 @@ from haarloom.actions.bosons import static_bosons
 from haarloom.actions.coefficient_table import link_from_coefficients
 from haarloom.actions.convergence import convergence_radius
 from haarloom.actions.conversions import convert_coupling
+from haarloom.actions.exponential_coupling import exponential_coupling
 from haarloom.actions.fermions import static_fermions
 from haarloom.actions.heat_kernel import heat_kernel
 from haarloom.actions.large_coupling import diffusion_time
+from haarloom.actions.link_products import coupled_link, stacked_links
 from haarloom.actions.loop_coupling import loop_coupling
 from haarloom.actions.loop_field import loop_field
 from haarloom.actions.manton import manton
@@ -43,7 +45,9 @@ __all__ = [
     "build",
     "convergence_radius",
     "convert_coupling",
+    "coupled_link",
     "diffusion_time",
+    "exponential_coupling",
     "haar_power",
     "heat_kernel",
     "link_from_coefficients",
@@ -56,6 +60,7 @@ __all__ = [
     "mixed_wilson",
     "polynomial_potential",
     "site_from",
+    "stacked_links",
     "static_bosons",
     "static_fermions",
     "static_species",

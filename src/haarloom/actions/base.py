@@ -180,7 +180,7 @@ class Link(_Weight):
             return NotImplemented
         from haarloom.actions.link_products import stacked_links
 
-        return stacked_links(self, other)
+        return stacked_links(self.group, [self, other])
 
     def __mul__(self, other: Any) -> CoupledLink:
         """The kernels multiplied point by point, one of them a finite coupling of loops."""
@@ -188,7 +188,7 @@ class Link(_Weight):
             return NotImplemented
         from haarloom.actions.link_products import coupled_link
 
-        return coupled_link(self, other)
+        return coupled_link(self.group, self, other)
 
     def formula(self) -> str:
         """LaTeX of the general k_r."""

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from sympy import Expr, S
 
 from haarloom.actions.base import ROUNDING, Link, refuse_group, stacked
+from haarloom.actions.irrep_words import irrep_of
 from haarloom.actions.parameters import Field, Parameter, Values, as_parameter, evaluate, exact_text
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
@@ -22,7 +23,7 @@ __all__ = ["BilinearCoupling", "bilinear_coupling"]
 _TABLE = Field(
     "couplings",
     "irrep pair table",
-    "(1, 1): 1, (3, 3): lam, (3bar, 3bar): lam",
+    "(trivial, trivial): 1, (fundamental, fundamental): lam",
     "λ_rs by pair of irreps, Σ λ_rs χ_r(P) χ_s(P')*",
 )
 _ENTRY = Field("lam", "complex", "lam", "coupling of one pair of irreps")
@@ -69,7 +70,7 @@ def _pair(group: SU, key: Any) -> Pair:
         key = [part.strip() for part in _split(key.strip().removeprefix("(").removesuffix(")"))]
     if not isinstance(key, Sequence) or len(key) != 2:
         raise ParameterError(f"couplings: {key!r} is no pair of irreps; write ('3', '3bar').")
-    return group.irrep(key[0]), group.irrep(key[1])
+    return irrep_of(group, key[0]), irrep_of(group, key[1])
 
 
 def _table_of_text(text: str) -> dict[str, str]:

@@ -12,10 +12,11 @@ from numpy.typing import NDArray
 from sympy import Expr, S
 
 from haarloom.actions.base import refuse_group
-from haarloom.actions.fermions import COPIES, IRREP, determinant_latex, eigenphases_of, particle_irrep
+from haarloom.actions.fermions import COPIES, IRREP, determinant_latex, eigenphases_of
 from haarloom.actions.fugacities import fugacities, known_inputs
 from haarloom.actions.fugacity_table import general_linear_dimension
 from haarloom.actions.heat_kernel import positive_integer
+from haarloom.actions.irrep_words import irrep_of
 from haarloom.actions.multiplicative import Factor, multiplicative_coefficients
 from haarloom.actions.parameters import Field, Parameter, Values
 from haarloom.actions.torus_site import TorusSite
@@ -67,7 +68,7 @@ def static_bosons(
         group,
         *fugacities(z, zbar, (_Z, _ZBAR), **known_inputs(physical)),
         positive_integer("copies", copies),
-        particle_irrep(group, irrep),
+        irrep_of(group, irrep),
     )
 
 

@@ -12,6 +12,7 @@ from sympy import Expr, S
 
 from haarloom.actions.base import Link, refuse_group
 from haarloom.actions.coefficient_sources import coefficient_mapping
+from haarloom.actions.irrep_words import irrep_of
 from haarloom.actions.parameters import Field, Parameter, Values, as_parameter, exact_text
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
@@ -58,7 +59,7 @@ def irrep_table(group: SU, table: Mapping[Any, Parameter], entry: Field) -> tupl
         )
     found: dict[Irrep, Expr] = {}
     for key, value in table.items():
-        irrep = group.irrep(key)
+        irrep = irrep_of(group, key)
         if irrep in found:
             raise ParameterError(f"The irrep {irrep.name} occurs twice in the table; keep one of the two.")
         found[irrep] = as_parameter(value, entry)

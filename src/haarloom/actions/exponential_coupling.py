@@ -89,7 +89,7 @@ class ExponentialCoupling(Link):
         return kernel, absolute * (8 + order) * _EPS + rest[..., None, None]
 
     def kernel_density_at(self, angles: NDArray[Any], others: NDArray[Any], values: Values) -> NDArray[Any]:
-        """K(P, P′) on two copies of the torus, all N eigenphases given in each, broadcast against each other."""
+        """K(P, P′) on two copies of the torus, all N eigenphases in each, the two broadcast."""
         loops = (np.exp(1j * np.asarray(phases)).sum(axis=-1) for phases in (angles, others))
         first, second = loops
         return np.asarray(np.exp(2 * float(self._value("lam", values)) * (first * second.conj()).real))

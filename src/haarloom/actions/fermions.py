@@ -15,6 +15,7 @@ from haarloom.actions.base import Site, refuse_group
 from haarloom.actions.fugacities import fugacities, known_inputs
 from haarloom.actions.fugacity_table import Monomials, fundamental_monomials, power_table
 from haarloom.actions.heat_kernel import positive_integer
+from haarloom.actions.irrep_words import irrep_of
 from haarloom.actions.multiplicative import Factor, multiplicative_coefficients
 from haarloom.actions.parameters import Field, Parameter, Values, evaluate
 from haarloom.algebra.class_function import ClassFunction
@@ -71,13 +72,8 @@ def static_fermions(
         group,
         *fugacities(z, zbar, (_Z, _ZBAR), **known_inputs(physical)),
         positive_integer("copies", copies),
-        particle_irrep(group, irrep),
+        irrep_of(group, irrep),
     )
-
-
-def particle_irrep(group: SU, irrep: Irrep | str | tuple[int, ...]) -> Irrep:
-    """The irrep of static matter; the word "fundamental" works for every N."""
-    return group.fundamental if irrep == "fundamental" else group.irrep(irrep)
 
 
 @dataclass(frozen=True)

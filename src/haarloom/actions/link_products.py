@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any, ClassVar
 
@@ -27,13 +27,20 @@ _GAUGE = Field("gauge", "weights", "", "diagonal link weight")
 _COUPLING = Field("coupling", "weights", "", "finite coupling of neighbouring loops")
 
 
-def stacked_links(*links: Link) -> StackedLinks:
-    """One strip after the other in time: k_r = ∏ k_r of the strips, written ``a @ b``.
+def stacked_links(group: SU, links: Sequence[Link | Mapping[str, Any]]) -> StackedLinks:
+    """Strips of different actions one after the other in time: k_r = ∏ k_r of the strips, written ``a @ b``.
 
     Integrating the links between two strips convolves their kernels as functions of P P′†, so plaquettes with
     different actions may follow one another.
+
+    Parameters
+    ----------
+    group : SU
+    links : sequence of Link
+        Diagonal link weights, or descriptions of them.
     """
-    opened = [one for link in links for one in (link.links if isinstance(link, StackedLinks) else (link,))]
+    built = [_rebuilt(group, link) for link in links]
+    opened = [one for link in built for one in (link.links if isinstance(link, StackedLinks) else (link,))]
     _one_group(opened)
     for link in opened:
         if not link.diagonal:
@@ -41,28 +48,44 @@ def stacked_links(*links: Link) -> StackedLinks:
                 f"A link weight of kind '{link.kind}' is not diagonal in the irreps and cannot be stacked; "
                 "multiply kernels with * instead."
             )
-    return StackedLinks(opened[0].group, tuple(opened))
+    return StackedLinks(group, tuple(opened))
 
 
-def coupled_link(gauge: Link, coupling: Link) -> CoupledLink:
-    """The pointwise product of two kernels, K(P, P′) K′(P, P′), one of them a finite coupling; written ``a
-    * b``.
+def coupled_link(
+    group: SU, gauge: Link | Mapping[str, Any], coupling: Link | Mapping[str, Any]
+) -> CoupledLink:
+    """A gauge action times a finite coupling of loops, K(P, P′) K′(P, P′) point by point; written ``a * b``.
+
+    Parameters
+    ----------
+    group : SU
+    gauge, coupling : Link
+        A diagonal link weight and a `loop_coupling` or `bilinear_coupling`, in either order, or descriptions.
 
     Raises
     ------
     ParameterError
         If neither is a finite bilinear coupling of loops.
     """
-    if not isinstance(coupling, BilinearCoupling | LoopCoupling):
-        gauge, coupling = coupling, gauge
-    if not isinstance(coupling, BilinearCoupling | LoopCoupling) or not gauge.diagonal:
+    first, second = _rebuilt(group, gauge), _rebuilt(group, coupling)
+    if not isinstance(second, BilinearCoupling | LoopCoupling):
+        first, second = second, first
+    if not isinstance(second, BilinearCoupling | LoopCoupling) or not first.diagonal:
         raise ParameterError(
-            f"The kernels '{gauge.kind}' and '{coupling.kind}' cannot be multiplied pointwise: one must be "
-            f"a finite coupling "
-            "(loop_coupling or bilinear_coupling), the other diagonal. For strips one after the other use @."
+            f"The kernels '{first.kind}' and '{second.kind}' cannot be multiplied pointwise: one must be a "
+            f"finite "
+            "coupling (loop_coupling or bilinear_coupling), the other diagonal. For strips one after the "
+            "other "
+            "use @."
         )
-    _one_group([gauge, coupling])
-    return CoupledLink(gauge.group, gauge, coupling)
+    _one_group([first, second])
+    return CoupledLink(group, first, second)
+
+
+def _rebuilt(group: SU, part: Any) -> Any:
+    from haarloom.actions.registry import build
+
+    return build(group, part) if isinstance(part, Mapping) else part
 
 
 def _one_group(links: Sequence[Link]) -> None:

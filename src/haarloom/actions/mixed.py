@@ -26,7 +26,10 @@ from haarloom.torus.characters import characters
 __all__ = ["MixedWilson", "mixed_wilson"]
 
 _COUPLINGS = Field(
-    "couplings", "irrep table", "3: beta, 8: beta_A", "coupling β_r by irrep, exp[Σ β_r Re χ_r/d_r]"
+    "couplings",
+    "irrep table",
+    "fundamental: beta, adjoint: beta_A",
+    "coupling β_r by irrep, exp[Σ β_r Re χ_r/d_r]",
 )
 _ENTRY = Field("beta", "real", "beta", "coupling of one irrep")
 

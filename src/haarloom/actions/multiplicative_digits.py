@@ -38,17 +38,30 @@ def digits_of(
         if not exact.is_real:
             return None
         numbers.append(Fraction(*sympy.Rational(exact).as_numer_denom()))
-    bits = 96 + int(3.33 * digits)
+    bits = 96 + int(3.33 * digits) + _smallness(numbers, irrep)
     before: sympy.Rational | None = None
     while bits <= _MOST_BITS:
         result = _rounded_sum(factors, numbers, irrep, bits)
-        if before is not None and abs(result - before) <= abs(result) * sympy.Rational(10) ** (-digits - 2):
-            return result.evalf(digits)
+        if before is not None:
+            if abs(result - before) <= abs(result) * sympy.Rational(10) ** (-digits - 2):
+                return result.evalf(digits)
+            if max(abs(result), abs(before)) < sympy.Rational(1, 1 << (bits // 2)):
+                return sympy.S.Zero
         before, bits = result, bits + bits // 2
     raise ConvergenceError(
-        f"The coefficient of {irrep.name} does not settle to {digits} digits within {_MOST_BITS:,} bits: "
-        "it may be zero, or a boson fugacity is too near to 1."
+        f"The coefficient of {irrep.name} does not settle to {digits} digits within {_MOST_BITS:,} bits; "
+        "move boson fugacities away from 1, or ask for fewer digits."
     )
+
+
+def _smallness(numbers: Sequence[Fraction], irrep: Irrep) -> int:
+    """Bits below 1 at which a coefficient that does not vanish must have shown itself.
+
+    It takes at most N factors of the smallest argument to build one box of the diagram.
+    """
+    least = min((abs(number) for number in numbers if number), default=Fraction(1))
+    per_box = max(0, least.denominator.bit_length() - least.numerator.bit_length() + 1)
+    return 2 * per_box * irrep.group.n * sum(irrep.labels)
 
 
 def _rounded_sum(

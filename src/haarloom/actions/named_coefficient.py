@@ -17,7 +17,7 @@ from haarloom.algebra.irrep import Irrep
 
 __all__ = ["NamedCoefficient"]
 
-_FLOAT_BITS = 53
+_FLOAT_BITS = 66  # SymPy adds guard bits when it asks for 15 digits
 
 
 class _Defining(Protocol):
@@ -97,7 +97,7 @@ class NamedCoefficient(sympy.Expr):
             value = self.weight.kernel_at(self.irreps, numbers)[0][0, 1]
         else:
             [value] = self.weight.coefficients_at(list(self.irreps), numbers)[0]
-        return sympy.sympify(complex(value) if value.imag else float(value.real))._eval_evalf(_FLOAT_BITS)
+        return sympy.sympify(complex(value) if value.imag else float(value.real))._eval_evalf(53)
 
     def _latex(self, printer: Any, exp: str | None = None) -> str:
         power = "" if exp is None else f"^{{{exp}}}"

@@ -67,23 +67,9 @@ def _entry(family: Literal["link", "site"], weight: Any, constructor: Callable[.
     return Entry(weight.kind, family, constructor, constructor.__name__, weight.FIELDS, summary)
 
 
-def _rebuilt(group: SU, part: Any) -> Any:
-    return build(group, part) if isinstance(part, Mapping) else part
-
-
 def _product(group: SU, factors: list[Any]) -> SiteProduct:
     """Product of site weights."""
-    return product_of(*(_rebuilt(group, factor) for factor in factors))
-
-
-def _stacked(group: SU, links: list[Any]) -> StackedLinks:
-    """Strips of different actions, one after the other in time."""
-    return stacked_links(*(_rebuilt(group, link) for link in links))
-
-
-def _coupled(group: SU, gauge: Any, coupling: Any) -> CoupledLink:
-    """A gauge action times a finite coupling of neighbouring loops."""
-    return coupled_link(_rebuilt(group, gauge), _rebuilt(group, coupling))
+    return product_of(*(build(group, part) if isinstance(part, Mapping) else part for part in factors))
 
 
 _ENTRIES = (
@@ -96,8 +82,8 @@ _ENTRIES = (
     _entry("link", LoopCoupling, loop_coupling),
     _entry("link", ExponentialCoupling, exponential_coupling),
     _entry("link", BilinearCoupling, bilinear_coupling),
-    _entry("link", StackedLinks, _stacked),
-    _entry("link", CoupledLink, _coupled),
+    _entry("link", StackedLinks, stacked_links),
+    _entry("link", CoupledLink, coupled_link),
     _entry("site", StaticFermions, static_fermions),
     _entry("site", StaticBosons, static_bosons),
     _entry("site", LoopField, loop_field),

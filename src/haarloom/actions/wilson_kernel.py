@@ -147,7 +147,7 @@ def wilson_shell_bound(n: int, shell: int, x: Floats) -> Floats:
 
     smallest = math.comb(shell + n - 1, n - 1)
     bottom = np.array([_scaled_w0(n, float(value)) for value in x])
-    return np.asarray(ive(0, x) ** (n - 2) * ive(shell, 2 * x) * (1 + 1e-12) / (smallest**2 * bottom))
+    return np.asarray(ive(0, x) ** (n - 2) * ive(shell, 2 * x) * (1 + 1e-12) / (smallest * bottom))
 
 
 @lru_cache(maxsize=4096)

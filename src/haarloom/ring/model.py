@@ -12,9 +12,15 @@ from haarloom.ring.basis import irrep_basis
 from haarloom.ring.transfer import TransferMatrix, build_transfer_matrix
 
 if TYPE_CHECKING:
+    import xarray
+
     from haarloom.actions.protocols import LinkWeight, SiteWeight
     from haarloom.algebra.group import SU
     from haarloom.algebra.irrep import Irrep
+    from haarloom.numerics.boundary import ComplexBoundary
+    from haarloom.numerics.certify import Certificate
+    from haarloom.numerics.exceptional import ExceptionalPoint
+    from haarloom.numerics.series import MassSeries
     from haarloom.numerics.spectrum import Spectrum
 
 __all__ = ["RingModel"]
@@ -122,6 +128,57 @@ class RingModel:
         from haarloom.numerics.spectrum import spectrum
 
         return spectrum(self, levels=levels, cutoff=cutoff, **values)
+
+    def certify(self, digits: int = 20, **options_and_values: Any) -> Certificate:
+        """Proven enclosures of the leading levels of the untruncated T.
+
+        See :func:`haarloom.numerics.certify.certify` for the options and what is raised.
+        """
+        from haarloom.numerics.certify import certify
+
+        return certify(self, digits=digits, **options_and_values)
+
+    def series(
+        self, parameter: str | sympy.Symbol, order: int = 6, levels: int = 3, **values: Any
+    ) -> MassSeries:
+        """Perturbation series of eigenvalues and masses in one parameter, with exact coefficients.
+
+        See :func:`haarloom.numerics.series.series` for what is raised.
+        """
+        from haarloom.numerics.series import series
+
+        return series(self, parameter, order=order, levels=levels, **values)
+
+    def exceptional_point(
+        self, parameter: str, between: tuple[Any, Any], **options_and_values: Any
+    ) -> ExceptionalPoint:
+        """Where two levels merge on a line, to any number of digits, with a proven bracket.
+
+        See :func:`haarloom.numerics.exceptional.exceptional_point` for the options and what is raised.
+        """
+        from haarloom.numerics.exceptional import exceptional_point
+
+        return exceptional_point(self, parameter, between, **options_and_values)
+
+    def complex_boundary(self, **options_and_values: Any) -> ComplexBoundary:
+        """The curves in a plane of two parameters where the lowest masses turn complex.
+
+        Give a pair (from, to) for exactly two parameters and a number for each other one. See
+        :func:`haarloom.numerics.boundary.complex_boundary` for the options and what is raised.
+        """
+        from haarloom.numerics.boundary import complex_boundary
+
+        return complex_boundary(self, **options_and_values)
+
+    def scan(self, **options_and_values: Any) -> xarray.Dataset:
+        """Masses, errors and verdicts on a grid over any number of parameters.
+
+        Give a list or an array for each axis and a number for each other parameter. See
+        :func:`haarloom.numerics.scan.scan` for the options (file, executor …) and what is raised.
+        """
+        from haarloom.numerics.scan import scan
+
+        return scan(self, **options_and_values)
 
     def __repr__(self) -> str:
         names = ", ".join(symbol.name for symbol in self.parameters)

@@ -47,7 +47,12 @@ def default_text(field: Field, group: SU) -> str:
     if field.domain != "irrep table":
         return field.default
     names = {"1": group.trivial, "3": group.fundamental, "3bar": group.antifundamental}
-    return shown_text({names[key].name: entry for key, entry in _table(field, field.default).items()})
+    return shown_text(
+        {
+            names[key].name if key in names else key: entry
+            for key, entry in _table(field, field.default).items()
+        }
+    )
 
 
 def choices_of(field: Field) -> tuple[str, ...]:
