@@ -2,17 +2,20 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from fractions import Fraction
 from functools import lru_cache
+from itertools import product
 from typing import TYPE_CHECKING, Any
 
 import flint
+import numpy as np
 import sympy
 
-from haarloom.algebra.labels import count_up_to, labels_up_to
+from haarloom.algebra.labels import count_up_to
 from haarloom.exceptions import ConvergenceError
-from haarloom.numerics.balls import ball, expression_ball
+from haarloom.numerics.balls import Interval, ball, expression_ball
 from haarloom.numerics.labels import conjugation
 from haarloom.numerics.site_components import site_components
 
@@ -70,12 +73,11 @@ def ball_truncation(model: RingModel, cutoff: int, values: Mapping[str, Any]) ->
             f"the site weight {site.kind} has infinitely many characters, for whose tail no proven bound is "
             "built in: certification needs a finite site weight; spectrum(...) gives masses with an error."
         )
-    numbers = {name: ball(value) for name, value in values.items()}
     support = tuple(site.support())
-    weights = [expression_ball(site.coefficient(irrep), numbers) for irrep in support]
+    weights = coefficient_balls([site.coefficient(irrep) for irrep in support], values)
     reach = int(site.reach(values) or 0)
     outer = cutoff + reach
-    k = link_balls(model.link, outer, numbers)
+    k = coefficient_balls(_link_expressions(model.link, outer), values)
     root, phase = _roots(k)
     components = site_components(site, cutoff, outer).pattern
     elements = _elements(components.components, weights)
@@ -96,7 +98,7 @@ def ball_truncation(model: RingModel, cutoff: int, values: Mapping[str, Any]) ->
         matrix,
         upwards,
         downwards,
-        upper_float(norm * link_tail(model.link, cutoff, numbers)),
+        upper_float(norm * link_tail(model.link, cutoff, values)),
         all(isinstance(number, flint.arb) for number in (*weights, *k)),
         _exactly_hermitian(model, support, values) and all(p == 1 for p in phase),
     )
@@ -147,25 +149,36 @@ def _link_expressions(link: LinkWeight, cutoff: int) -> tuple[sympy.Expr, ...]:
     return tuple(link.coefficient(irrep) for irrep in link.group.irreps(cutoff))
 
 
-def link_balls(link: LinkWeight, cutoff: int, numbers: Mapping[str, Any]) -> list[Any]:
-    """Balls that contain k_r, for Σ a_i ≤ cutoff."""
-    return [expression_ball(expression, numbers) for expression in _link_expressions(link, cutoff)]
+def coefficient_balls(expressions: Sequence[sympy.Expr], values: Mapping[str, Any]) -> list[Any]:
+    """Balls that contain exact coefficients; rational values enter the expressions as they are."""
+    exact = {
+        sympy.Symbol(name): sympy.Rational(value.numerator, value.denominator)
+        for name, value in values.items()
+        if isinstance(value, Fraction)
+    }
+    numbers = {name: ball(value) for name, value in values.items()}
+    return [expression_ball(expression.xreplace(exact), numbers) for expression in expressions]
 
 
-def link_tail(link: LinkWeight, cutoff: int, numbers: Mapping[str, Any]) -> Any:
-    """A ball not below |k_r| for every irrep with Σ a_i > cutoff.
+PROVEN_TAILS = ("heat kernel", "Wilson", "coefficient table", "loop coupling")
+"""Kinds of link weight whose ``largest_outside`` is a proven bound, monotone in every parameter."""
 
-    Heat kernel: C₂ rises with every label, because the inverse Cartan matrix has no negative element,
-    so that the smallest C₂ outside sits on the first shell outside.
-    """
-    if link.kind == "heat kernel":
-        shell = labels_up_to(link.group.rank, cutoff + 1)[count_up_to(link.group.rank, cutoff) :]
-        weakest = min((link.group.irrep(labels) for labels in shell), key=lambda irrep: irrep.casimir(2))
-        return expression_ball(link.coefficient(weakest), numbers)
-    raise ConvergenceError(
-        f"no proven bound of |k_r| beyond the basis is built in for the link weight {link.kind!r}: "
-        "certification knows the heat kernel; spectrum(...) gives masses with an error."
-    )
+
+def link_tail(link: LinkWeight, cutoff: int, values: Mapping[str, Any]) -> float:
+    """A float not below |k_r| for every irrep with Σ a_i > cutoff, at all ends of the intervals."""
+    if link.kind not in PROVEN_TAILS:
+        raise ConvergenceError(
+            f"no proven bound of |k_r| beyond the basis is built in for the link weight {link.kind!r} "
+            f"(there is one for {', '.join(PROVEN_TAILS)}): spectrum(...) gives masses with an error."
+        )
+    names = [symbol.name for symbol in link.parameters]
+    ends = [(v.lower, v.upper) if isinstance(v, Interval) else (v,) for v in (values[name] for name in names)]
+    bounds = [
+        float(np.max(link.largest_outside(cutoff, dict(zip(names, map(float, corner), strict=True)))))
+        for corner in product(*ends)
+    ]
+    # the slack covers the rounding of exact values to floats
+    return max(bounds) * (1 + 1e-9)
 
 
 def _exactly_hermitian(model: RingModel, support: tuple[Irrep, ...], values: Mapping[str, Any]) -> bool:

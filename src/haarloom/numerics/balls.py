@@ -166,6 +166,8 @@ def expression_ball(expression: sympy.Expr, values: Mapping[str, Any]) -> Any:
         return flint.arb.const_e()
     if expression.is_Pow:
         return _power(*expression.args, values)
+    if expression.func.__name__ == "WilsonCoefficient":
+        return _wilson_ball(expression)
     arguments = [expression_ball(argument, values) for argument in expression.args]
     if expression.is_Add:
         return reduce(add, arguments)
@@ -194,7 +196,24 @@ def _function(expression: sympy.Expr, arguments: list[Any]) -> Any:
         return arguments[1].bessel_i(arguments[0])
     if name == "Abs":
         return abs(arguments[0])
+    if name == "conjugate":
+        return arguments[0].conjugate() if isinstance(arguments[0], flint.acb) else arguments[0]
     raise ConvergenceError(
         f"{name} has no ball arithmetic here, so that nothing is proven for {expression}: "
         "certification knows powers, exp, log, trigonometric and hyperbolic functions, and besseli."
     )
+
+
+def _wilson_ball(expression: sympy.Expr) -> Any:
+    """k_r of the Wilson action from integer determinants, with the relative error that they are good for."""
+    from haarloom.actions.wilson_kernel import wilson_fraction
+
+    n, beta = expression.args[:2]
+    if not beta.is_Rational:
+        raise ConvergenceError(
+            "Wilson coefficients have ball arithmetic at single rational β only: give β as a fraction or a decimal."
+        )
+    exact = beta / n
+    value = wilson_fraction(expression.irrep, Fraction(int(exact.p), int(exact.q)), flint.ctx.prec + 4)
+    found = _rational(value)
+    return found + flint.arb(0, 1) * abs(found) * flint.arb(2) ** (-flint.ctx.prec)

@@ -44,7 +44,13 @@ class ExactField:
 
     def root(self, element: Any) -> sympy.Expr:
         """The square root of a field element, squares taken out of it; exponentials are positive."""
-        return sympy.sqrt(sympy.factor(self.field.to_expr(element))).xreplace(dict(self.backwards))
+        outside, inside = sympy.S.One, sympy.S.One
+        for base, power in sympy.factor(self.field.to_expr(element)).as_powers_dict().items():
+            whole = int(power) // 2 if power.is_Integer and not base.is_Rational else 0
+            outside *= base**whole
+            inside *= base ** (power - 2 * whole)
+        top, bottom = (sympy.expand(part) for part in sympy.fraction(inside))
+        return (outside * sympy.sqrt(top / bottom)).xreplace(dict(self.backwards))
 
 
 def exact_field(expressions: Iterable[sympy.Expr]) -> ExactField:

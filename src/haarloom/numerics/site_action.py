@@ -91,6 +91,8 @@ class TorusAction:
 
     def apply(self, kets: NDArray[Any]) -> NDArray[Any]:
         """W on columns: (n, m) to (outer size, m)."""
+        if not kets.size:
+            return np.zeros((self.outer_size, *kets.shape[1:]), dtype=kets.dtype)
         columns = kets.reshape(self.size, -1).T
         if self.real and np.iscomplexobj(columns):
             parts = [self._one(column.real) + 1j * self._one(column.imag) for column in columns]
