@@ -77,12 +77,12 @@ def test_series_of_written_and_named_mixed_actions_are_the_same_polynomials() ->
         assert sympy.expand(named.strong_coupling(irrep, 4) - written.strong_coupling(irrep, 4)) == 0
 
 
-@pytest.mark.parametrize("n", [2, 3, 4, 5])
-@pytest.mark.parametrize("kind", ["Wilson", "mixed", "Manton"])
+@pytest.mark.parametrize(
+    ("n", "kind"),
+    [(n, kind) for kind in ("Wilson", "mixed", "Manton") for n in (2, 3, 4)] + [(5, "Wilson"), (6, "Wilson")],
+)
 def test_large_couplings_are_met_to_third_order(n: int, kind: str) -> None:
     G = SU(n)
-    if (n, kind) == (5, "Manton"):
-        pytest.skip("SU(5) quadrature of a creased weight has too few digits for a third-order remainder")
     link = {
         "Wilson": wilson(G, "b", 2),
         "mixed": mixed_wilson(G, {"fundamental": "b", "adjoint": "c"}, 2),

@@ -69,8 +69,8 @@ class PlaquetteLink(Link):
         w, error = w / dimensions, error / dimensions
         if abs(w[0]) <= 2 * error[0]:
             raise ConvergenceError(
-                f"The average of the plaquette weight vanishes within its error at {dict(point)}, so that "
-                "k_r = w_r/w_0 has no meaning; change the couplings."
+                f"∫dU w(U) is zero within its error at {dict(point)}, so that k_r = w_r/w_0 has no meaning: the "
+                "weight averages to nothing, or it is too narrow for the finest grid. Change the couplings."
             )
         k = w[1:] / w[0]
         return k, (error[1:] + np.abs(k) * error[0]) / (np.abs(w[0]) - error[0]) + 4 * _EPS * np.abs(k)

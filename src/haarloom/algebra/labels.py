@@ -13,7 +13,8 @@ from operator import index
 from typing import Any
 
 from haarloom.algebra.bounded_cache import cached_terms
-from haarloom.exceptions import LabelError, ParameterError, SizeError
+from haarloom.algebra.whole_numbers import whole_number
+from haarloom.exceptions import LabelError, SizeError
 
 __all__ = [
     "Labels",
@@ -93,15 +94,7 @@ def validated_rows(raw: Sequence[Any]) -> Rows:
 
 def validated_cutoff(raw: Any) -> int:
     """Check a cutoff K on the sum of the labels: an integer ≥ 0."""
-    try:
-        if isinstance(raw, bool):
-            raise TypeError
-        cutoff = index(raw)
-    except TypeError:
-        raise ParameterError(f"cutoff {raw!r} given; it must be an integer ≥ 0, such as cutoff=3.") from None
-    if cutoff < 0:
-        raise ParameterError(f"cutoff {cutoff} given; it must be ≥ 0: 0 keeps the trivial irrep alone.")
-    return cutoff
+    return whole_number("cutoff", raw, 0, "0 keeps the trivial irrep alone, 1 the fundamental as well")
 
 
 def count_up_to(rank: int, cutoff: int) -> int:

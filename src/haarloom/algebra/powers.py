@@ -9,7 +9,6 @@ Trudi's determinant every other Schur function (I. G. Macdonald, *Symmetric Func
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from operator import index
 from types import MappingProxyType
 from typing import Any
 
@@ -20,7 +19,8 @@ from haarloom.algebra.irrep import Irrep
 from haarloom.algebra.labels import Labels, Rows, validated_rows
 from haarloom.algebra.products import act_on, multiply_sums
 from haarloom.algebra.weights import characters_in_contents, weight_system
-from haarloom.exceptions import ParameterError, SizeError
+from haarloom.algebra.whole_numbers import whole_number
+from haarloom.exceptions import SizeError
 
 __all__ = [
     "adams",
@@ -134,12 +134,4 @@ def _jacobi_trudi(labels: Labels, shape: Rows, row: int, columns: tuple[int, ...
 
 def validated_power(n: Any) -> int:
     """Check a power: an integer ≥ 0."""
-    try:
-        if isinstance(n, bool):
-            raise TypeError
-        value = index(n)
-    except TypeError:
-        raise ParameterError(f"power {n!r} given; it must be an integer ≥ 0, such as 2.") from None
-    if value < 0:
-        raise ParameterError(f"power {value} given; it must be ≥ 0: a class function has no finite inverse.")
-    return value
+    return whole_number("power", n, 0, "a class function has no finite inverse")

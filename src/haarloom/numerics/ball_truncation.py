@@ -68,6 +68,11 @@ def ball_truncation(model: RingModel, cutoff: int, values: Mapping[str, Any]) ->
         the link weight has no proven bound on its tail.
     """
     site, rank = model.site, model.group.rank
+    if not model.link.diagonal:
+        raise ConvergenceError(
+            f"the link weight {model.link.kind} mixes irreps: certification is built in for links that are "
+            "diagonal in them; spectrum(...) gives masses with an error."
+        )
     if not site.finite:
         raise ConvergenceError(
             f"the site weight {site.kind} has infinitely many characters, for whose tail no proven bound is "
@@ -177,6 +182,11 @@ def link_tail(link: LinkWeight, cutoff: int, values: Mapping[str, Any]) -> float
         float(np.max(link.largest_outside(cutoff, dict(zip(names, map(float, corner), strict=True)))))
         for corner in product(*ends)
     ]
+    if len(bounds) > 1 and link.kind == "coefficient table" and max(bounds) > 0:
+        raise ConvergenceError(
+            "a coefficient table that depends on an interval needs a cutoff beyond its last irrep: "
+            "give a single value, or fewer irreps in the table."
+        )
     # the slack covers the rounding of exact values to floats
     return max(bounds) * (1 + 1e-9)
 

@@ -54,7 +54,7 @@ class CompiledTransfer:
     components: SiteComponents
 
     def __call__(self, **values: Any) -> NDArray[Any]:
-        """T at the given values, arrays broadcast against each other.
+        """T at the given values, arrays broadcast against each other; K W for a link that mixes irreps.
 
         Returns
         -------
@@ -68,17 +68,16 @@ class CompiledTransfer:
         SizeError
             If the result would take more than 4 GB.
         """
+        if not self.model.link.diagonal:
+            return self.unsymmetric(**values)
         checked = checked_values(self.model, values)
         shape = broadcast_shape(checked)
         size = len(self.basis)
         check_memory(int(np.prod(shape)) * size * size, f"{shape or 'one'} points × {size} × {size} elements")
-        site = self.site(checked)
-        root = self.link_roots(checked)
-        if self.model.link.diagonal:
-            result = root[..., :, None] * site
-            result *= root[..., None, :]
-            return np.asarray(result)
-        return np.asarray(root @ site @ root)
+        root = _root(self.link(checked))
+        result = root[..., :, None] * self.site(checked)
+        result *= root[..., None, :]
+        return np.asarray(result)
 
     def unsymmetric(self, **values: Any) -> NDArray[Any]:
         """K W at the given values, shape broadcast(values) + (n, n): similar to T, and free of matrix roots."""
@@ -93,14 +92,6 @@ class CompiledTransfer:
         if link.diagonal:
             return np.asarray(link.coefficients_at(self.basis, values)[0])
         return np.asarray(link.kernel_at(self.basis, values)[0])
-
-    def link_roots(self, values: Mapping[str, Any]) -> NDArray[Any]:
-        """√k_r, or the matrix square root of a symmetric kernel; imaginary where k is negative."""
-        kernel = self.link(values)
-        if self.model.link.diagonal:
-            return _root(kernel)
-        levels, vectors = np.linalg.eigh(kernel)
-        return np.asarray((vectors * _root(levels)[..., None, :]) @ np.swapaxes(vectors, -1, -2).conj())
 
     def site(self, values: Mapping[str, Any]) -> NDArray[Any]:
         """⟨r|W|s⟩, shape broadcast(site values) + (n, n)."""

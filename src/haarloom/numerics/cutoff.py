@@ -36,7 +36,8 @@ def smallest_cutoff(rank: int, irreps: int) -> int:
 def closing_cutoff(model: RingModel, levels: int, values: Mapping[str, Any]) -> int:
     """First K at which ‖W‖ max|k| beyond the basis falls below the guessed size of the last level.
 
-    The guess is a third of the ``levels``-th largest |k_r| times the mean of W.
+    The guess is a third of the ``levels``-th largest |k_r| times the mean of W. For a link that mixes
+    irreps the search starts at the smallest basis.
 
     Raises
     ------
@@ -45,6 +46,8 @@ def closing_cutoff(model: RingModel, levels: int, values: Mapping[str, Any]) -> 
     """
     rank = model.group.rank
     first = smallest_cutoff(rank, levels + 2)
+    if not model.link.diagonal:
+        return first
     k, _ = link_coefficients(model.link, first + 2, values)
     weakest = np.sort(np.abs(k))[::-1][levels - 1]
     mean = abs(complex(np.max(model.site.coefficients_at((model.group.trivial,), values)[0])))

@@ -13,13 +13,10 @@ __all__ = ["perron_frobenius"]
 def perron_frobenius(truncation: Truncation) -> tuple[bool, str]:
     """Whether λ_0 must be real, positive and simple, and a sentence that says why.
 
-    T has no negative element where no k_r and no w_c is negative: fusion numbers count. All
-    elements ≥ 0 make the spectral radius an eigenvalue; a connected pattern makes it simple
+    All elements ≥ 0 make the spectral radius an eigenvalue; a connected pattern makes it simple
     (O. Perron, *Math. Ann.* 64 (1907) 248; G. Frobenius, 1912).
     """
-    _, weights, errors = truncation.site
-    positive = truncation.real and bool((weights >= -errors).all()) and bool((truncation.phase > 0).all())
-    if not positive:
+    if not truncation.nonnegative:
         return False, (
             "Some elements of T are negative or complex, so that λ_0, the largest |λ|, need not be "
             "real, positive or simple (Perron and Frobenius do not apply)."

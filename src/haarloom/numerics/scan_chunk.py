@@ -51,6 +51,8 @@ class ChunkResult:
 def solve_chunk(grid: ScanGrid, chunk: Chunk) -> ChunkResult:
     """Masses at all points of a chunk; points whose bound does not close come back without numbers."""
     plane = _plane(grid, chunk)
+    if not grid.model.link.diagonal:
+        return _one_by_one(grid, chunk, plane)
     try:
         cutoff = _cutoff(plane)
         if grid.model.group.count_irreps(cutoff) > LARGEST_PLANE:

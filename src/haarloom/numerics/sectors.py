@@ -14,6 +14,9 @@ from haarloom.numerics.truncation import Truncation
 
 __all__ = ["component_labels", "sectors"]
 
+MIXED = 2000
+"""Largest basis of a link that mixes irreps whose pattern is looked at element by element."""
+
 
 def component_labels(truncation: Truncation) -> tuple[int, NDArray[np.int64]]:
     """Number of parts that T does not connect, and the part of each irrep, shape (n,).
@@ -30,6 +33,9 @@ def component_labels(truncation: Truncation) -> tuple[int, NDArray[np.int64]]:
         places = (action.rows[kept], action.columns[kept])
         pattern = sparse.csr_array((np.ones(int(kept.sum())), places), shape=(size, size))
         parts, labels = connected_components(pattern, directed=True, connection="strong")
+        return int(parts), np.asarray(labels, dtype=np.int64)
+    if not truncation.mirrored and truncation.size <= MIXED:
+        parts, labels = connected_components(truncation.dense != 0, directed=True, connection="strong")
         return int(parts), np.asarray(labels, dtype=np.int64)
     irreps, weights, errors = truncation.site
     order = truncation.rank + 1

@@ -223,6 +223,10 @@ def _problem(model: RingModel, parameter: Any, order: int, values: Mapping[str, 
         )
     if not isinstance(order, int) or isinstance(order, bool) or order < 1:
         raise ParameterError(f"order = {order!r}: give a whole number ≥ 1, the highest power to keep.")
+    if not model.link.diagonal:
+        raise ConvergenceError(
+            f"the link weight {model.link.kind} mixes irreps: a series is built in for links that are diagonal in them."
+        )
     if not model.site.finite:
         raise ConvergenceError(
             f"the site weight {model.site.kind} has infinitely many characters: a series is built in for finite "

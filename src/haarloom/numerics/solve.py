@@ -1,9 +1,10 @@
-"""Which solver: dense for small bases, Krylov beyond."""
+"""Which solver: dense for small bases and for links that mix irreps, Krylov beyond."""
 
 from __future__ import annotations
 
 from haarloom.numerics.dense import EigenSystem, solve_dense
 from haarloom.numerics.krylov import solve_krylov
+from haarloom.numerics.site_action import FusionAction, TorusAction
 from haarloom.numerics.truncation import Truncation
 
 __all__ = ["DENSE_LIMIT", "solve"]
@@ -14,6 +15,7 @@ DENSE_LIMIT = 160
 
 def solve(truncation: Truncation, levels: int) -> EigenSystem:
     """At least ``levels`` leading eigenvalues of T inside the basis."""
-    if truncation.size <= max(DENSE_LIMIT, 4 * levels):
+    mixed = not isinstance(truncation.action, FusionAction | TorusAction)
+    if mixed or truncation.size <= max(DENSE_LIMIT, 4 * levels):
         return solve_dense(truncation)
     return solve_krylov(truncation, levels)

@@ -31,7 +31,7 @@ if TYPE_CHECKING:
     from haarloom.algebra.irrep import Irrep
     from haarloom.ring.model import RingModel
 
-__all__ = ["EPS", "Truncation", "input_errors", "phase_of", "truncate"]
+__all__ = ["EPS", "Truncation", "input_errors", "phase_of", "site_numbers", "truncate"]
 
 TRANSFORM_COST = 8.0
 """Elements of a sparse matrix that cost as much as one grid point and one level of a transform (measured)."""
@@ -91,6 +91,12 @@ class Truncation:
     def real(self) -> bool:
         """Whether T is real in this basis (CK invariance)."""
         return not (np.iscomplexobj(self.site[1]) or np.iscomplexobj(self.phase))
+
+    @property
+    def nonnegative(self) -> bool:
+        """Whether no element of T is negative, up to the stated errors of w_c: fusion numbers count."""
+        _, weights, errors = self.site
+        return self.real and bool((weights >= -errors).all()) and bool((self.phase > 0).all())
 
     @cached_property
     def self_conjugate(self) -> bool:
@@ -209,10 +215,14 @@ def truncate(model: RingModel, cutoff: int, values: Mapping[str, Any]) -> Trunca
     ConvergenceError
         If a coefficient comes out infinite or not a number.
     """
+    if not model.link.diagonal:
+        from haarloom.numerics.kernel_truncation import truncate_kernel
+
+        return truncate_kernel(model, cutoff, values)
     link, site, rank = model.link, model.site, model.group.rank
     outer = cutoff + outward_reach(site, cutoff, values)
     k, k_errors = link_coefficients(link, outer, values)
-    support, weights, weight_errors = _site_numbers(site, values)
+    support, weights, weight_errors = site_numbers(site, values)
     for name, numbers in (("w_c", weights), ("k_r", k)):
         if not np.isfinite(numbers).all():
             raise ConvergenceError(
@@ -252,7 +262,7 @@ def input_errors(
     return largest**2 * (weight_errors @ dimensions) + shift * norm * largest
 
 
-def _site_numbers(
+def site_numbers(
     site: SiteWeight, values: Mapping[str, Any]
 ) -> tuple[tuple[Irrep, ...], NDArray[Any], NDArray[np.float64]]:
     """All w_c of a finite W; of an infinite one those that are not negligible."""

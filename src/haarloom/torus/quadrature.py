@@ -4,13 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from math import factorial
-from operator import index
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from haarloom.algebra.group import SU
+from haarloom.algebra.whole_numbers import whole_number
 from haarloom.exceptions import ParameterError, SizeError
 from haarloom.torus.angles import full_angles
 
@@ -97,12 +97,4 @@ def haar_integral(
 
 def validated_points(points: Any) -> int:
     """Check a number of grid points: an integer ≥ 1."""
-    try:
-        if isinstance(points, bool):
-            raise TypeError
-        value = index(points)
-    except TypeError:
-        raise ParameterError(f"points={points!r} given; it must be an integer ≥ 1, such as 64.") from None
-    if value < 1:
-        raise ParameterError(f"points={value} given; it must be ≥ 1.")
-    return value
+    return whole_number("points", points, 1, "64 is a good start")

@@ -10,7 +10,15 @@ import ipywidgets
 import sympy
 import traitlets
 
-from haarloom.exceptions import ParameterError, SizeError
+from haarloom.exceptions import ParameterError
+from haarloom.widgets.arguments import (
+    MOST_ROWS,
+    brisk_cutoff,
+    checked_element,
+    checked_mapping,
+    checked_model,
+    drawable_cutoff,
+)
 from haarloom.widgets.copy_code import call, model_lines, values_text
 from haarloom.widgets.derivation_view import DerivationView, derivation_html
 from haarloom.widgets.fields import Field, column, section
@@ -27,10 +35,6 @@ if TYPE_CHECKING:
 
 __all__ = ["ElementPane"]
 
-MOST_ROWS = 100
-"""Largest grid: 10,000 cells are what a page draws at once and an eye still scans."""
-
-
 class ElementPane(Pane):
     """The transfer matrix T_rs as a grid of r against s; choosing an element opens its derivation.
 
@@ -39,7 +43,7 @@ class ElementPane(Pane):
     model
         The ring model.
     cutoff
-        Irreps with Σ a_i ≤ cutoff.
+        Irreps with Σ a_i ≤ cutoff; where left out, the largest cutoff up to 3 that a grid can show.
     element
         Names of the row and the column whose derivation is open.
     values
@@ -70,12 +74,14 @@ class ElementPane(Pane):
     def __init__(
         self,
         model: RingModel,
-        cutoff: int = 3,
+        cutoff: int | None = None,
         element: tuple[str, str] | None = None,
         values: Mapping[str, float] | None = None,
         ranges: Mapping[str, tuple[float, float]] | None = None,
     ) -> None:
-        self._ranges = dict(ranges or {})
+        group = checked_model(model).group
+        cutoff = brisk_cutoff(group, 3, MOST_ROWS) if cutoff is None else drawable_cutoff(group, cutoff)
+        self._ranges = checked_mapping("ranges", ranges)
         self._sliders = ValueSliders(checked_start(model, values), ranges_of(model, self._ranges))
         self._cutoff_field = Field("cutoff K", cutoff, self._read_cutoff, help="irreps with Σ a_i ≤ K")
         self._grid = MatrixGrid()
@@ -87,10 +93,9 @@ class ElementPane(Pane):
             [controls, column(self._grid), column(section("derivation"), self._heading, self._steps)]
         )
         super().__init__(body.add_class("hl-matrix"))
-        trivial = model.group.trivial.name
         self.set_trait("model", model)
         self.set_trait("cutoff", cutoff)
-        self.set_trait("element", tuple(element or (trivial, trivial)))
+        self.set_trait("element", checked_element(model, cutoff, element))
         traitlets.link((self, "cutoff"), (self._cutoff_field, "value"))
         traitlets.link((self._sliders, "values"), (self, "values"))
         self._grid.observe(self._choose, "selected")
@@ -101,11 +106,15 @@ class ElementPane(Pane):
     def _read_cutoff(self, text: str) -> int:
         if not text.strip().isdigit():
             raise ParameterError(f"cutoff K = {text!r} is no truncation: give a whole number ≥ 0.")
-        return _drawable_cutoff(self.model, int(text))
+        return drawable_cutoff(self.model.group, int(text))
 
-    def _follow_model(self, _: Any) -> None:
+    def _follow_model(self, change: Any) -> None:
         values = checked_start(self.model, None, keep=self.values)
+        group = self.model.group
         with self.one_drawing():
+            if change.old.group != group:
+                self.cutoff = brisk_cutoff(group, min(self.cutoff, 3), MOST_ROWS)
+                self.element = checked_element(self.model, self.cutoff, None)
             self._sliders.rebuild(values, ranges_of(self.model, self._ranges))
             self.refresh()
 
@@ -122,7 +131,7 @@ class ElementPane(Pane):
         self._grid.show_numbers(self.transfer.numeric(**self.values))
 
     def _draw_matrix(self) -> None:
-        cutoff = _drawable_cutoff(self.model, self.cutoff)
+        cutoff = drawable_cutoff(self.model.group, self.cutoff)
         if self.transfer and self.transfer.model == self.model and self.transfer.cutoff == cutoff:
             return
         transfer = self.model.transfer_matrix(cutoff=cutoff)
@@ -184,16 +193,6 @@ class ElementPane(Pane):
             return ""
         heading = f"<p>$\\displaystyle {escape(_element_latex(self.derivation))}$</p>"
         return heading + derivation_html(self.derivation, self.verification)
-
-
-def _drawable_cutoff(model: RingModel, cutoff: int) -> int:
-    size = model.group.count_irreps(cutoff)
-    if size > MOST_ROWS:
-        raise SizeError(
-            f"cutoff K = {cutoff} means {size:,} irreps; a grid shows at most {MOST_ROWS}: take a smaller "
-            f"cutoff here, or work with model.transfer_matrix(cutoff={cutoff}) in a cell."
-        )
-    return cutoff
 
 
 def _element_latex(derivation: Derivation) -> str:

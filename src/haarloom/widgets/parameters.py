@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
+from math import isfinite
 from typing import Any, Protocol
 
 from sympy import Symbol
 
 from haarloom.exceptions import ParameterError
+from haarloom.widgets.arguments import checked_mapping, checked_span
 
 __all__ = ["Parametric", "checked_start", "ranges_of"]
 
@@ -32,7 +34,7 @@ BY_NAME: dict[str, Span] = {
 """Names in common use: strong to moderate coupling; fugacities from an empty lattice past half filling."""
 
 BY_DOMAIN: dict[str, Span] = {
-    "boson fugacity": (0.0, 0.95, 0.2),
+    "boson fugacity": (0.0, 0.8, 0.2),
     "positive real": (0.1, 3.0, 1.0),
     "nonnegative real": (0.0, 3.0, 1.0),
 }
@@ -41,9 +43,16 @@ OTHERWISE: Span = (0.0, 1.0, 0.1)
 
 
 def ranges_of(owner: Parametric, given: Mapping[str, tuple[float, float]]) -> dict[str, tuple[float, float]]:
-    """Slider ranges by name; ``given`` ones first, else what suits the name and the domain."""
+    """Slider ranges by name; ``given`` ones first, else what suits the name and the domain.
+
+    Raises
+    ------
+    ParameterError
+        For a range that is no pair of finite numbers, the lower one first.
+    """
     spans = _spans(owner)
-    return {name: given.get(name, span[:2]) for name, span in spans.items()}
+    wanted = {name: checked_span(f"range of {name}", span) for name, span in given.items()}
+    return {name: wanted.get(name, span[:2]) for name, span in spans.items()}
 
 
 def checked_start(
@@ -56,7 +65,7 @@ def checked_start(
     ParameterError
         For a name that is no parameter, or a value that is no real number.
     """
-    spans, given, kept = _spans(owner), dict(given or {}), dict(keep or {})
+    spans, given, kept = _spans(owner), checked_mapping("values", given), dict(keep or {})
     for name in given:
         if name not in spans:
             raise ParameterError(
@@ -90,6 +99,12 @@ def _domains(owner: Any) -> Iterator[tuple[str, str]]:
 
 def _real(name: str, value: Any) -> float:
     try:
-        return float(value)
+        number = float(value)
     except (TypeError, ValueError):
-        raise ParameterError(f"{name} = {value!r}: a slider needs one real number.") from None
+        number = float("nan")
+    if not isfinite(number):
+        raise ParameterError(
+            f"{name} = {value!r}: a slider needs one finite real number. Complex values are for cells, "
+            f"e.g. model.spectrum({name}=0.6+0.8j, …); or write {name} as an expression in real parameters."
+        )
+    return number
