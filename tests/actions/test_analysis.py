@@ -23,7 +23,14 @@ from haarloom.algebra.group import SU
 from haarloom.exceptions import MissingValueError
 
 G = SU(3)
-PROPERTIES = ("real", "positive", "CK symmetric", "charge symmetric", "non-negative coefficients", "N-alities")
+PROPERTIES = (
+    "real",
+    "positive",
+    "CK symmetric",
+    "charge symmetric",
+    "non-negative coefficients",
+    "N-alities",
+)
 
 
 @pytest.mark.parametrize(
@@ -84,7 +91,9 @@ def test_casimir_scaling_is_seen_where_it_holds() -> None:
         (loop_field(G, {"8": "h"}), {"h": -0.4}, (True, True, False)),
     ],
 )
-def test_transfer_matrix_properties(site: object, values: dict[str, float], expected: tuple[bool, ...]) -> None:
+def test_transfer_matrix_properties(
+    site: object, values: dict[str, float], expected: tuple[bool, ...]
+) -> None:
     found = analyse_transfer(heat_kernel(G, "t"), site, t=1.0, **values)  # type: ignore[arg-type]
     assert tuple(found[name].holds for name in ("T real", "T Hermitian", "T non-negative")) == expected
 

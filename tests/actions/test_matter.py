@@ -1,4 +1,4 @@
-"""Static fermions, bosons, species, loop fields and their products: closed forms on the torus against coefficients."""
+"""Static matter, loop fields and their products: closed forms on the torus against coefficients."""
 
 from __future__ import annotations
 
@@ -81,7 +81,10 @@ def test_exact_coefficients_evaluate_to_the_numbers(n: int) -> None:
         w, error = site.coefficients_at(irreps, values)
         exact = {sympy.Symbol(name): sympy.Rational(str(value)) for name, value in values.items()}
         for irrep, value, slack in list(zip(irreps, w, error, strict=True))[:4]:
-            assert abs(complex(sympy.sympify(site.coefficient(irrep)).subs(exact).evalf()) - value) <= 4 * slack + 1e-15
+            assert (
+                abs(complex(sympy.sympify(site.coefficient(irrep)).subs(exact).evalf()) - value)
+                <= 4 * slack + 1e-15
+            )
 
 
 @pytest.mark.parametrize("n", [2, 3, 4])
@@ -96,7 +99,9 @@ def test_bounds_hold_on_the_torus_and_beyond_the_cutoff(n: int, rng: np.random.G
         assert sizes.sum() <= site.tail_bound(2, values) * (1 + 1e-9) + error.sum() * 100, site
 
 
-@pytest.mark.parametrize(("n", "copies", "bar"), [(2, 3, 3), (3, 1, 0), (3, 2, 1), (3, 3, 0), (4, 1, 2), (5, 1, 1)])
+@pytest.mark.parametrize(
+    ("n", "copies", "bar"), [(2, 3, 3), (3, 1, 0), (3, 2, 1), (3, 3, 0), (4, 1, 2), (5, 1, 1)]
+)
 def test_closed_form_of_many_copies_equals_repeated_products(n: int, copies: int, bar: int) -> None:
     G = SU(n)
     table = power_table(G.fundamental, copies, bar)
@@ -255,7 +260,9 @@ def test_density_is_the_determinant_of_the_eigenvalues(rng: np.random.Generator)
     G = SU(4)
     angles = rng.uniform(-3, 3, (6, 3))
     full = np.concatenate([angles, -angles.sum(axis=1, keepdims=True)], axis=1)
-    expected = (1 + 0.3 * np.exp(1j * full)).prod(axis=1) ** 2 * (1 + 0.2j * np.exp(-1j * full)).prod(axis=1) ** 2
+    expected = (1 + 0.3 * np.exp(1j * full)).prod(axis=1) ** 2 * (1 + 0.2j * np.exp(-1j * full)).prod(
+        axis=1
+    ) ** 2
     found = static_fermions(G, "z", "y", 2).density_at(angles, {"z": 0.3, "y": 0.2j})
     assert np.allclose(found, expected, rtol=1e-13)
     loop = characters([G.fundamental], angles)[:, 0]

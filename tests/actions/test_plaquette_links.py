@@ -140,7 +140,8 @@ def test_radius_of_the_su2_series_is_the_first_zero_of_a_bessel_function() -> No
 
 
 def test_radius_of_the_su3_series_is_where_ratios_of_its_coefficients_say() -> None:
-    # the root test on the exact series: |c_n|^{-1/n} scatters around the radius, its best values close in on it
+    # the root test on the exact series: |c_n|^{-1/n} scatters around the radius, its best values close in
+    # on it
     G = SU(3)
     series = sympy.Poly(wilson(G, "b").strong_coupling(G.fundamental, 40), B)
     roots = [abs(float(series.coeff_monomial(B**m))) ** (-1 / m) for m in range(30, 41)]

@@ -34,7 +34,10 @@ EXAMPLES: dict[str, tuple[Any, dict[str, complex]]] = {
     "bilinear coupling": (actions.bilinear_coupling(G, {("3", "8"): "I*a", ("8", "3"): "-I*a"}), {"a": 0.1}),
     "stacked strips": (actions.heat_kernel(G, "t") @ actions.wilson(G, "b"), {"t": 1.0, "b": 2.0}),
     "coupled link": (actions.heat_kernel(G, "t") * actions.loop_coupling(G, "lam"), {"t": 1.0, "lam": 0.1}),
-    "static fermions": (actions.static_fermions(G, "exp(mu - m)", "y", 2, "6"), {"mu": 0.1, "m": 1.0, "y": 0.1}),
+    "static fermions": (
+        actions.static_fermions(G, "exp(mu - m)", "y", 2, "6"),
+        {"mu": 0.1, "m": 1.0, "y": 0.1},
+    ),
     "static bosons": (actions.static_bosons(G, "z", 0.25, 2), {"z": 0.1}),
     "loop field": (actions.loop_field(G, {"8": "h", "3": 0.5}), {"h": 0.1}),
     "polynomial potential": (actions.polynomial_potential(G, "b2", 0.75, 7.5, "v"), {"b2": 1.0, "v": 1.0}),
@@ -98,7 +101,7 @@ def test_every_field_has_what_a_control_needs(kind: str) -> None:
     entry = REGISTRY[kind]
     assert entry.help
     for field in entry.fields:
-        assert field.name and field.domain and field.help
+        assert all((field.name, field.domain, field.help))
         if field.domain != "weights":
             assert field.default
 

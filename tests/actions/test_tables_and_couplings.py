@@ -115,7 +115,9 @@ def test_stacked_strips_multiply_coefficients() -> None:
     irreps = G.irreps(2)
     values = {"t": 0.4, "beta": 5.0}
     k, error = link.coefficients_at(irreps, values)
-    expected = heat_kernel(G, 1.4).coefficients_at(irreps, {})[0] * wilson(G, 5, 2).coefficients_at(irreps, {})[0]
+    expected = (
+        heat_kernel(G, 1.4).coefficients_at(irreps, {})[0] * wilson(G, 5, 2).coefficients_at(irreps, {})[0]
+    )
     assert np.all(np.abs(k - expected) <= error + 1e-15)
     assert float(link.coefficient(G.adjoint).subs(values).evalf()) == pytest.approx(k[4], rel=1e-12)
     outside = [r for r in G.irreps(4) if sum(r.labels) > 2]

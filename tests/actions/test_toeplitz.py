@@ -15,7 +15,9 @@ from haarloom.actions.toeplitz import difference_rows, toeplitz_complex, toeplit
 
 
 def _binomials(top: int, reach: int) -> list[int]:
-    return [sympy.binomial(top, k + top // 2) if 0 <= k + top // 2 <= top else 0 for k in range(-reach, reach + 1)]
+    return [
+        sympy.binomial(top, k + top // 2) if 0 <= k + top // 2 <= top else 0 for k in range(-reach, reach + 1)
+    ]
 
 
 @pytest.mark.parametrize("n", [2, 3, 4, 6])

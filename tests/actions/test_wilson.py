@@ -140,7 +140,7 @@ def test_doit_writes_the_bessel_determinants(n: int) -> None:
 
 @pytest.mark.parametrize("bad", [-1, "-0.5", 1j])
 def test_negative_and_complex_couplings_are_refused(bad: object) -> None:
-    with pytest.raises(ParameterError, match="beta = .* must be a real number ≥ 0"):
+    with pytest.raises(ParameterError, match=r"beta = .* must be a real number ≥ 0"):
         wilson(SU(3), bad)
     with pytest.raises(ParameterError, match="first argument must be the group"):
         wilson(3, 1)

@@ -18,7 +18,13 @@ from haarloom.actions import (
 )
 from haarloom.actions.base import Site
 from haarloom.algebra.group import SU
-from haarloom.exceptions import ClassFunctionError, ConvergenceError, ExpressionError, LabelError, ParameterError
+from haarloom.exceptions import (
+    ClassFunctionError,
+    ConvergenceError,
+    ExpressionError,
+    LabelError,
+    ParameterError,
+)
 from haarloom.torus.quadrature import haar_integral
 
 VALUES = {"h": 0.3, "z": 0.4}

@@ -55,7 +55,7 @@ def test_every_shipped_model_has_masses_with_errors(path: Path, capsys: pytest.C
     assert main(["run", str(path)]) == 0
     rows = [line.split() for line in capsys.readouterr().out.splitlines() if line.split()[0].isdigit()]
     assert len(rows) == 5
-    assert all(float(margin) < 1e-6 for _, _, _, margin, *_ in rows)
+    assert all(float(margin) < 1e-4 for _, _, _, margin, *_ in rows)
 
 
 @pytest.mark.parametrize(

@@ -335,14 +335,14 @@ def _kernel_hermitian(k: NDArray[Any], error: NDArray[np.float64]) -> Statement:
 
 
 def _kernel_positive(link: Link, k: NDArray[Any], error: NDArray[np.float64]) -> Statement:
+    if not _kernel_hermitian(k, error).holds:
+        return Statement("positive kernel", False, "K is not Hermitian.", "measured")
     levels = np.linalg.eigvalsh((k + k.conj().T) / 2)
-    slack = float(error.sum()) + _ROUNDING * float(np.abs(k).max())
-    holds = bool(levels.min() >= -slack)
-    what = "every k_r ≥ 0" if link.diagonal else "no negative eigenvalue of K"
-    words = f"On the lowest irreps {what}: K has a real square root." if holds else (
-        f"K has the negative eigenvalue {levels.min():.4g}: its square root is imaginary there."
-    )  # fmt: skip
-    return Statement("positive kernel", holds, words, "measured")
+    holds = bool(levels.min() >= -float(error.sum()) - _ROUNDING * float(np.abs(k).max()))
+    what = "every k_r ≥ 0" if link.diagonal else "no eigenvalue of K is negative"
+    found = f"On the lowest irreps {what}: K has a real square root."
+    lacking = f"K has the negative eigenvalue {levels.min():.4g}: its square root is imaginary there."
+    return Statement("positive kernel", holds, found if holds else lacking, "measured")
 
 
 def _kernel_mixing(irreps: Sequence[Irrep], k: NDArray[Any], error: NDArray[np.float64]) -> Statement:

@@ -91,8 +91,10 @@ class ClassExpression:
     @property
     def parameters(self) -> tuple[Symbol, ...]:
         """Every other symbol, sorted by name."""
-        plain = self.expression.xreplace(dict.fromkeys(self.words, sympy.S.One))
-        return free_parameters([plain])
+        # a dummy for each word: a number could cancel a parameter away
+        dummies = {word: sympy.Dummy() for word in self.words}
+        plain = self.expression.xreplace(dummies)
+        return tuple(s for s in free_parameters([plain]) if not isinstance(s, sympy.Dummy))
 
     @property
     def finite(self) -> ClassFunction | None:
@@ -183,7 +185,7 @@ def _finite(group: SU, expression: Expr) -> ClassFunction | None:
 
 def _check_class_function(candidate: ClassExpression) -> None:
     """A bare P is refused by name; symmetry and periodicity in eigenphases are tested at random points."""
-    if Symbol("P") in candidate.expression.xreplace(dict.fromkeys(candidate.words, sympy.S.One)).free_symbols:
+    if Symbol("P") in candidate.parameters:
         raise ClassFunctionError(
             "P is a matrix, no class function: write L for tr P, tr(P, n) or chi(labels)."
         )

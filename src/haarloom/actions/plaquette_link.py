@@ -69,7 +69,8 @@ class PlaquetteLink(Link):
         w, error = w / dimensions, error / dimensions
         if abs(w[0]) <= 2 * error[0]:
             raise ConvergenceError(
-                f"∫dU w(U) is zero within its error at {dict(point)}, so that k_r = w_r/w_0 has no meaning: the "
+                f"∫dU w(U) is zero within its error at {dict(point)}, so that k_r = w_r/w_0 has no meaning: "
+                f"the "
                 "weight averages to nothing, or it is too narrow for the finest grid. Change the couplings."
             )
         k = w[1:] / w[0]

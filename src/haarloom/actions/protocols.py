@@ -40,6 +40,9 @@ class Weight(Protocol):
     def latex(self) -> str:
         """The weight as a LaTeX formula."""
 
+    def __hash__(self) -> int:
+        """Weights are values: equal ones have equal hashes."""
+
     def describe(self) -> Mapping[str, Any]:
         """Kind and fields as exact strings (lists and mappings of such), enough to rebuild it."""
 

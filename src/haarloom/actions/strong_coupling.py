@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING, Any
 
 import sympy
 from sympy import QQ, Expr
+from sympy.polys.rings import PolyRing
 
 from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.irrep import Irrep
@@ -56,20 +57,19 @@ def strong_coupling_series(link: Link, irrep: Irrep, order: int) -> Expr:
     """
     if not isinstance(order, int) or isinstance(order, bool) or not 0 <= order <= _HIGHEST:
         raise ParameterError(f"order = {order!r} is not allowed: it must be an integer from 0 to {_HIGHEST}.")
-    exponent = finite_exponent(link)
-    moments, names = _moments(exponent, order)
-    zero = moments.ring.zero
+    moments = _moments(finite_exponent(link), order)
+    zero = moments.one - moments.one
     trivial = [level.get(link.group.trivial.labels, zero) for level in moments.levels]
     top = [level.get(irrep.labels, zero) / irrep.dimension for level in moments.levels]
     ratio = _divided(top, trivial)
-    strip = [moments.ring.one, *[zero] * order]
+    strip = [moments.one, *[zero] * order]
     for _ in range(link.plaquettes):
         strip = _truncated_product(strip, ratio)
-    polynomial = sum(strip, zero).as_expr()
-    return sympy.expand(polynomial.subs(names, simultaneous=True))
+    return moments.expression(strip)
 
 
 def finite_exponent(link: Link) -> ClassFunction:
+    """ln w(U) of the link weight, or a `ClassFunctionError` if it is no finite combination of characters."""
     exponent = link.exponent()
     if exponent is None:
         raise ClassFunctionError(
@@ -81,22 +81,40 @@ def finite_exponent(link: Link) -> ClassFunction:
 
 @dataclass(frozen=True)
 class _Moments:
-    """⟨χ_r* S^M⟩/M! for M = 0 … order, by labels."""
+    """⟨χ_r* S^M⟩/M! for M = 0 … order, by labels.
 
-    ring: Any
+    With one coupling the values are rational numbers, its M-th power understood; with several they are
+    polynomials with one generator for each.
+    """
+
+    couplings: tuple[Expr, ...]
+    one: Any
     levels: tuple[Mapping[Labels, Any], ...]
+
+    def expression(self, graded: Sequence[Any]) -> Expr:
+        """A sum of one value for each order, written in the couplings."""
+        if len(self.couplings) == 1:
+            terms = (sympy.Rational(int(c.numerator), int(c.denominator)) for c in graded)
+            return sympy.expand(sympy.Add(*(c * self.couplings[0] ** k for k, c in enumerate(terms))))
+        names = dict(zip(_generators(len(self.couplings)), self.couplings, strict=True))
+        return sympy.expand(sum(graded, self.one - self.one).as_expr().subs(names, simultaneous=True))
+
+
+def _generators(count: int) -> list[sympy.Symbol]:
+    return [sympy.Symbol(f"g{i}") for i in range(count)]
 
 
 @lru_cache(maxsize=8)
-def _moments(exponent: ClassFunction, order: int) -> tuple[_Moments, Mapping[Expr, Expr]]:
-    """Moments with one polynomial generator for each coupling, and what the generators stand for."""
+def _moments(exponent: ClassFunction, order: int) -> _Moments:
     parts = {labels: value.as_coeff_Mul() for labels, value in exponent.by_labels().items()}
-    couplings = sorted({rest for _, rest in parts.values()}, key=sympy.default_sort_key)
-    generators = [sympy.Symbol(f"g{i}") for i in range(len(couplings))]
-    ring = sympy.polys.rings.PolyRing(generators, QQ)
-    element = dict(zip(couplings, ring.gens, strict=True))
+    couplings = tuple(sorted({rest for _, rest in parts.values()}, key=sympy.default_sort_key))
+    one, elements = QQ(1), [QQ(1)]
+    if len(couplings) > 1:
+        ring = PolyRing(_generators(len(couplings)), QQ)
+        one, elements = ring.one, list(ring.gens)
+    element = dict(zip(couplings, elements, strict=True))
     step = {labels: element[rest] * QQ(count.p, count.q) for labels, (count, rest) in parts.items()}
-    level: dict[Labels, Any] = {(0,) * exponent.group.rank: ring.one}
+    level: dict[Labels, Any] = {(0,) * exponent.group.rank: one}
     levels = [level]
     for power in range(1, order + 1):
         following: dict[Labels, Any] = {}
@@ -104,10 +122,12 @@ def _moments(exponent: ClassFunction, order: int) -> tuple[_Moments, Mapping[Exp
             for factor, coupling in step.items():
                 term = value * coupling / power
                 for target, count in multiply(labels, factor).items():
-                    following[target] = following.get(target, ring.zero) + count * term
+                    following[target] = (
+                        following[target] + count * term if target in following else count * term
+                    )
         level = following
         levels.append(level)
-    return _Moments(ring, tuple(levels)), dict(zip(generators, couplings, strict=True))
+    return _Moments(couplings, one, tuple(levels))
 
 
 def _divided(top: Sequence[Any], bottom: Sequence[Any]) -> list[Any]:

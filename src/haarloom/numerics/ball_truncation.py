@@ -1,4 +1,4 @@
-"""T on a truncated basis in ball arithmetic: the block inside, both couplings outwards, proven norms outside."""
+"""T on a truncated basis in ball arithmetic: the block inside, both couplings outwards, proven norms."""
 
 from __future__ import annotations
 
@@ -88,9 +88,15 @@ def ball_truncation(model: RingModel, cutoff: int, values: Mapping[str, Any]) ->
     elements = _elements(components.components, weights)
     size = count_up_to(rank, cutoff)
     shell = count_up_to(rank, outer) - size
-    matrix, upwards, downwards = flint.acb_mat(size, size), flint.acb_mat(shell, size), flint.acb_mat(size, shell)
+    matrix, upwards, downwards = (
+        flint.acb_mat(size, size),
+        flint.acb_mat(shell, size),
+        flint.acb_mat(size, shell),
+    )
     mirror = conjugation(rank, outer).tolist()
-    for row, column, element in zip(components.rows.tolist(), components.columns.tolist(), elements, strict=True):
+    for row, column, element in zip(
+        components.rows.tolist(), components.columns.tolist(), elements, strict=True
+    ):
         if row < size:
             matrix[row, column] = root[row] * element * root[column] * phase[column]
         else:
@@ -136,7 +142,7 @@ def _roots(k: list[Any]) -> tuple[list[Any], list[Any]]:
         size = abs(number)
         roots.append(size.sqrt())
         if isinstance(number, flint.acb):
-            phases.append(number / size if not number == 0 else flint.acb(1))
+            phases.append(number / size if number != 0 else flint.acb(1))
         elif number >= 0:
             phases.append(flint.arb(1))
         elif number < 0:
@@ -202,7 +208,10 @@ def _exactly_hermitian(model: RingModel, support: tuple[Irrep, ...], values: Map
             return False
         exact[symbol] = value
     return all(
-        sympy.expand(model.site.coefficient(c).subs(exact) - sympy.conjugate(model.site.coefficient(c.conjugate).subs(exact)))
+        sympy.expand(
+            model.site.coefficient(c).subs(exact)
+            - sympy.conjugate(model.site.coefficient(c.conjugate).subs(exact))
+        )
         == 0
         for c in support
     )

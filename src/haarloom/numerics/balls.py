@@ -80,7 +80,9 @@ def as_exact(name: str, given: Any) -> Fraction | Interval | sympy.Expr:
             raise ParameterError(f"{name} = {given!r} is no interval: give two ends, e.g. ('0.30', '0.31').")
         return Interval(*given)
     if isinstance(given, complex):
-        parts = [sympy.Rational(*_fraction(name, part).as_integer_ratio()) for part in (given.real, given.imag)]
+        parts = [
+            sympy.Rational(*_fraction(name, part).as_integer_ratio()) for part in (given.real, given.imag)
+        ]
         return parts[0] + sympy.I * parts[1]
     return _fraction(name, given)
 
@@ -165,7 +167,8 @@ def expression_ball(expression: sympy.Expr, values: Mapping[str, Any]) -> Any:
     if expression is sympy.E:
         return flint.arb.const_e()
     if expression.is_Pow:
-        return _power(*expression.args, values)
+        base, exponent = expression.args
+        return _power(base, exponent, values)
     if expression.func.__name__ == "WilsonCoefficient":
         return _wilson_ball(expression)
     arguments = [expression_ball(argument, values) for argument in expression.args]
@@ -211,7 +214,7 @@ def _wilson_ball(expression: sympy.Expr) -> Any:
     n, beta = expression.args[:2]
     if not beta.is_Rational:
         raise ConvergenceError(
-            "Wilson coefficients have ball arithmetic at single rational β only: give β as a fraction or a decimal."
+            "Wilson coefficients have ball arithmetic at single rational β: give a fraction or a decimal."
         )
     exact = beta / n
     value = wilson_fraction(expression.irrep, Fraction(int(exact.p), int(exact.q)), flint.ctx.prec + 4)

@@ -29,7 +29,7 @@ __all__ = ["LevelSet", "TruncationBatch", "batch_errors", "complete_levels", "tr
 
 @dataclass(frozen=True, eq=False)
 class TruncationBatch:
-    """M points on the irreps with Σ a_i ≤ cutoff; notation of :class:`~haarloom.numerics.truncation.Truncation`.
+    """M points on the irreps with Σ a_i ≤ cutoff, in the notation of :mod:`haarloom.numerics.truncation`.
 
     Attributes
     ----------

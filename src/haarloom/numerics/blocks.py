@@ -65,7 +65,7 @@ def leading_blocks(truncation: Truncation, system: EigenSystem, levels: int) -> 
 
 
 def _rest(truncation: Truncation, system: EigenSystem, levels: int, count: int) -> Block:
-    """The complement of the leading vectors: orthonormal Q with Yᵀ Q = 0, resolvent norms by its singular values."""
+    """The complement of the leading vectors: orthonormal Q with Yᵀ Q = 0; resolvents by singular values."""
     right, left = system.right[:, :count], system.left[:, :count]
     basis = np.linalg.qr(left.conj(), mode="complete")[0][:, count:]
     inner = basis.conj().T @ truncation.apply(basis)
@@ -108,8 +108,9 @@ def _level_blocks(
         np.linalg.norm(right, axis=0),
         np.linalg.norm(left, axis=0),
     )
-    for level, *sizes in zip(single, *norms, strict=True):
-        blocks.append(Block(system.values[level : level + 1], *map(float, sizes)))
+    for level, up, down, size, dual in zip(single, *norms, strict=True):
+        value = system.values[level : level + 1]
+        blocks.append(Block(value, float(up), float(down), float(size), float(dual)))
     return blocks
 
 
@@ -124,11 +125,11 @@ def _stiff_clusters(system: EigenSystem, levels: int, noise: float, count: int) 
     apart[np.arange(levels), np.arange(levels)] = np.inf
     reaches = condition * noise > 0.01 * apart.min(axis=1)
     relevant = np.flatnonzero(reaches | ((condition > STIFF) & (np.arange(count) < levels + 2)))
-    for level in relevant if count > 1 else ():
+    for level in map(int, relevant if count > 1 else ()):
         distance = np.abs(values - values[level])
         distance[level] = np.inf
         nearest = int(np.argmin(distance))
-        group = partner.get(level, {int(level)}) | partner.get(nearest, {nearest})
+        group = partner.get(level, {level}) | partner.get(nearest, {nearest})
         for member in group:
             partner[member] = group
     groups = {id(group): sorted(group) for group in partner.values()}

@@ -1,9 +1,4 @@
-"""The boundary of the complex region: exceptional points followed as curves in a plane of two parameters.
-
-Pseudo-arclength continuation (H. B. Keller, in *Applications of Bifurcation Theory* (1977) 359) of
-g = g_λ = 0 in the three unknowns (λ, x, y). The curve in this space is smooth through folds in x or y,
-and through cusps, where three levels meet and only its projection onto the plane has a tip.
-"""
+"""The boundary of the complex region: exceptional points followed as curves in a plane of two parameters."""
 
 from __future__ import annotations
 
@@ -16,7 +11,7 @@ from numpy.typing import NDArray
 
 from haarloom.algebra.labels import count_up_to
 from haarloom.exceptions import ConvergenceError, ParameterError
-from haarloom.numerics.bordered import BorderedPoint, bordered_point
+from haarloom.numerics.continuation import Chart, State, corrected, traced
 from haarloom.numerics.cutoff import checked_levels
 from haarloom.numerics.exceptional import exceptional_points
 from haarloom.numerics.mergers import FloatMerger, MatrixFamily, sufficient_cutoff
@@ -88,42 +83,9 @@ class ComplexBoundary:
 
     def __repr__(self) -> str:
         sizes = ", ".join(str(len(curve.points)) for curve in self.curves) or "none"
-        return f"ComplexBoundary({self.axes[0]}, {self.axes[1]}; curves of {sizes} points; cutoff {self.cutoff})"
-
-
-@dataclass(frozen=True, eq=False)
-class _State:
-    """A point of a curve: its unknowns, the bordered system there, and the borders."""
-
-    unknowns: NDArray[np.float64]
-    bordered: BorderedPoint
-    borders: tuple[NDArray[Any], NDArray[Any]]
-
-
-@dataclass(frozen=True, eq=False)
-class _Chart:
-    """The problem in the unknowns (ln|λ|, x/width, y/height)."""
-
-    family: MatrixFamily
-    sign: float
-    size: NDArray[np.float64]
-    box: NDArray[np.float64]
-
-    def evaluate(self, unknowns: NDArray[np.float64], borders: tuple[NDArray[Any], NDArray[Any]]) -> BorderedPoint:
-        return bordered_point(*self.family.around(self.point(unknowns)), self.level(unknowns), borders)
-
-    def level(self, unknowns: NDArray[np.float64]) -> float:
-        return float(self.sign * np.exp(unknowns[0]))
-
-    def point(self, unknowns: NDArray[np.float64]) -> NDArray[np.float64]:
-        return unknowns[1:] * self.size
-
-    def jacobian(self, bordered: BorderedPoint, unknowns: NDArray[np.float64]) -> NDArray[np.float64]:
-        return np.asarray(np.real(bordered.jacobian) * [self.level(unknowns), *self.size])
-
-    def inside(self, unknowns: NDArray[np.float64]) -> bool:
-        point = self.point(unknowns)
-        return bool((point >= self.box[:, 0]).all() and (point <= self.box[:, 1]).all())
+        return (
+            f"ComplexBoundary({self.axes[0]}, {self.axes[1]}; curves of {sizes} points; cutoff {self.cutoff})"
+        )
 
 
 @single_threaded
@@ -177,7 +139,7 @@ def complex_boundary(
     for axis, other, merger in _seeds(family, box, count, lines):
         chart, start = _started(family, box, axis, other, merger)
         if not any(_on_curve(curve, start, chart, step) for curve in curves):
-            curves.append(_traced(chart, start, step, most_points))
+            curves.append(_curve(chart, *traced(chart, start, step, most_points)))
     return ComplexBoundary(axes, (tuple(box[0]), tuple(box[1])), tuple(curves), cutoff, fixed)
 
 
@@ -188,7 +150,7 @@ def _plane(
     if len(pairs) != 2 or any(len(pair) != 2 for pair in pairs.values()):
         raise ParameterError(
             f"{len(pairs)} parameters have a range: give a pair (from, to) for exactly two of "
-            f"{', '.join(parameter_names(model))}, e.g. z=(0.1, 1.0), t=(0.2, 2.0), and numbers for the others."
+            f"{', '.join(parameter_names(model))}, e.g. z=(0.1, 1.0), t=(0.2, 2.0); numbers for the others."
         )
     starts = {name: pair[0] for name, pair in pairs.items()}
     fixed = plain_numbers(checked_values(model, {**values, **starts}))
@@ -205,7 +167,7 @@ def _seeds(
     """Mergers on lines across the box: (axis that varies, value of the other, merger)."""
     for axis in (0, 1):
         name, other = family.names[axis], family.names[1 - axis]
-        for value in np.linspace(*box[1 - axis], lines):
+        for value in np.linspace(box[1 - axis, 0], box[1 - axis, 1], lines):
             fixed = {**family.fixed, other: float(value)}
             try:
                 found = exceptional_points(family.model, name, tuple(box[axis]), levels, **fixed)
@@ -218,13 +180,13 @@ def _seeds(
 
 def _started(
     family: MatrixFamily, box: NDArray[np.float64], axis: int, other: float, merger: FloatMerger
-) -> tuple[_Chart, _State]:
+) -> tuple[Chart, State]:
     point = [merger.value, other] if axis == 0 else [other, merger.value]
-    chart = _Chart(family, float(np.sign(merger.eigenvalue)), box[:, 1] - box[:, 0], box)
+    chart = Chart(family, float(np.sign(merger.eigenvalue)), box[:, 1] - box[:, 0], box)
     size = count_up_to(family.model.group.rank, family.cutoff)
     borders = tuple(_fitted(vector, size) for vector in (merger.bordered.left, merger.bordered.right))
     unknowns = np.array([np.log(abs(merger.eigenvalue)), *(np.array(point) / chart.size)])
-    start = _corrected(chart, unknowns, np.array([0.0, 1.0, 1.0]), (borders[0], borders[1]))
+    start = corrected(chart, unknowns, np.array([0.0, 1.0, 1.0]), (borders[0], borders[1]))
     if start is None:
         raise ConvergenceError(f"no boundary curve starts at {dict(zip(family.names, point, strict=True))}.")
     return chart, start
@@ -236,92 +198,7 @@ def _fitted(vector: NDArray[Any], size: int) -> NDArray[np.float64]:
     return np.asarray(numbers / np.linalg.norm(numbers))
 
 
-def _corrected(
-    chart: _Chart,
-    guess: NDArray[np.float64],
-    tangent: NDArray[np.float64],
-    borders: tuple[NDArray[Any], NDArray[Any]],
-) -> _State | None:
-    """Newton's method in the plane through the guess across the tangent; None where it does not settle."""
-    unknowns = guess.copy()
-    for _ in range(8):
-        bordered = chart.evaluate(unknowns, borders)
-        system = np.vstack([chart.jacobian(bordered, unknowns), tangent])
-        residual = np.array([*np.real(bordered.residual), tangent @ (unknowns - guess)])
-        change = np.linalg.solve(system, -residual)
-        unknowns = unknowns + change
-        borders = (_unit(bordered.left), _unit(bordered.right))
-        if np.abs(change).max() < 1e-10:
-            return _State(unknowns, chart.evaluate(unknowns, borders), borders)
-        if np.abs(change).max() > 0.5:
-            return None
-    return None
-
-
-def _unit(vector: NDArray[Any]) -> NDArray[np.float64]:
-    return np.asarray(np.real(vector) / np.linalg.norm(vector))
-
-
-def _tangent(chart: _Chart, state: _State, before: NDArray[np.float64] | None) -> NDArray[np.float64]:
-    """Unit tangent: the null vector of the 2 × 3 Jacobian, kept in the direction of travel."""
-    first, second = chart.jacobian(state.bordered, state.unknowns)
-    direction = np.cross(first, second)
-    direction = direction / np.linalg.norm(direction)
-    return direction if before is None or direction @ before > 0 else -direction
-
-
-def _traced(chart: _Chart, start: _State, step: float, most_points: int) -> BoundaryCurve:
-    forward, closed = _followed(chart, start, 1.0, step, most_points)
-    backward = [] if closed else _followed(chart, start, -1.0, step, most_points)[0]
-    return _curve(chart, [*reversed(backward), start, *forward], closed)
-
-
-def _followed(
-    chart: _Chart, start: _State, sign: float, step: float, most_points: int
-) -> tuple[list[_State], bool]:
-    """Points from the start in one direction, until the box is left or the start met again."""
-    found: list[_State] = []
-    state, length = start, step
-    tangent = sign * _tangent(chart, start, None)
-    while len(found) < most_points and length > 1e-5 * step:
-        ahead = _corrected(chart, state.unknowns + length * tangent, tangent, state.borders)
-        if ahead is None or _turned(chart, ahead, tangent) or _far(ahead, state, length):
-            length /= 2
-            continue
-        if not chart.inside(ahead.unknowns):
-            edge = _on_edge(chart, state, ahead)
-            return [*found, edge] if edge else found, False
-        tangent = _tangent(chart, ahead, tangent)
-        found.append(ahead)
-        if len(found) > 3 and np.linalg.norm(ahead.unknowns - start.unknowns) < 0.75 * length:
-            return found, True
-        state, length = ahead, min(step, 1.4 * length)
-    return found, False
-
-
-def _on_edge(chart: _Chart, inside: _State, outside: _State) -> _State | None:
-    """The point where the curve leaves the box, between two of its points."""
-    ends = np.array([inside.unknowns[1:], outside.unknowns[1:]]) * chart.size
-    travel = ends[1] - ends[0]
-    limit = np.where(travel > 0, chart.box[:, 1], chart.box[:, 0])
-    with np.errstate(divide="ignore", invalid="ignore"):
-        share = np.where(travel != 0, (limit - ends[0]) / travel, np.inf)
-    axis = int(np.argmin(share))
-    guess = inside.unknowns + max(float(share[axis]), 0.0) * (outside.unknowns - inside.unknowns)
-    guess[1 + axis] = limit[axis] / chart.size[axis]
-    return _corrected(chart, guess, np.eye(3)[1 + axis], outside.borders)
-
-
-def _turned(chart: _Chart, ahead: _State, tangent: NDArray[np.float64]) -> bool:
-    """Whether the direction changed by more than about 20 degrees in one step."""
-    return float(abs(_tangent(chart, ahead, tangent) @ tangent)) < 0.94
-
-
-def _far(ahead: _State, state: _State, length: float) -> bool:
-    return float(np.linalg.norm(ahead.unknowns - state.unknowns)) > 1.5 * length
-
-
-def _on_curve(curve: BoundaryCurve, start: _State, chart: _Chart, step: float) -> bool:
+def _on_curve(curve: BoundaryCurve, start: State, chart: Chart, step: float) -> bool:
     scaled = np.column_stack([np.log(np.abs(curve.eigenvalue)), curve.points / chart.size])
     ends = scaled[1:] - scaled[:-1]
     offset = start.unknowns - scaled[:-1]
@@ -330,7 +207,7 @@ def _on_curve(curve: BoundaryCurve, start: _State, chart: _Chart, step: float) -
     return bool(distance.min(initial=np.inf) < 0.2 * step)
 
 
-def _curve(chart: _Chart, states: list[_State], closed: bool) -> BoundaryCurve:
+def _curve(chart: Chart, states: list[State], closed: bool) -> BoundaryCurve:
     points = np.array([chart.point(state.unknowns) for state in states])
     eigenvalue = np.array([chart.level(state.unknowns) for state in states])
     grounds, levels, errors = zip(*(_surroundings(chart, state) for state in states), strict=True)
@@ -347,7 +224,7 @@ def _curve(chart: _Chart, states: list[_State], closed: bool) -> BoundaryCurve:
     )
 
 
-def _surroundings(chart: _Chart, state: _State) -> tuple[float, int, float]:
+def _surroundings(chart: Chart, state: State) -> tuple[float, int, float]:
     """λ_0, the position of the pair, and the estimated distance to the boundary of the untruncated T."""
     level, point = chart.level(state.unknowns), chart.point(state.unknowns)
     values = {**chart.family.fixed, **dict(zip(chart.family.names, map(float, point), strict=True))}

@@ -12,13 +12,15 @@ from numpy.typing import NDArray
 from haarloom.algebra.labels import count_up_to, validated_cutoff
 from haarloom.exceptions import ParameterError
 from haarloom.numerics.batch import batch_errors, complete_levels, truncate_batch
-from haarloom.numerics.bounds import mass_errors
+from haarloom.numerics.bounds import eigenvalue_errors, mass_errors
 from haarloom.numerics.compile import check_memory
 from haarloom.numerics.cutoff import checked_levels
+from haarloom.numerics.dense import solve_dense
 from haarloom.numerics.ordering import masses_from
 from haarloom.numerics.parameters import checked_values, plain_numbers
 from haarloom.numerics.threads import single_threaded
 from haarloom.numerics.tracking import tracked
+from haarloom.numerics.truncation import truncate
 from haarloom.numerics.verdicts import verdicts_from
 
 if TYPE_CHECKING:
@@ -100,14 +102,14 @@ def masses_along(
     level, size = validated_cutoff(cutoff), count_up_to(model.group.rank, validated_cutoff(cutoff))
     count = checked_levels(levels, size)
     check_memory(8 * len(line) * size * size, f"{len(line)} points × {size:,} irreps squared")
-    batch = truncate_batch(model, level, {name: array.reshape(-1) for name, array in checked.items()})
-    values, right, left = batch.solved()
-    radius = batch_errors(batch, complete_levels(batch, values, right, left), min(count + GUARD, size))
+    solved = _stacked if model.link.diagonal else _one_by_one
+    lists = {name: array.reshape(-1) for name, array in checked.items()}
+    values, radius, real, hermitian = solved(model, level, lists, min(count + GUARD, size))
     kept = values[:, : radius.shape[1]]
     order = np.concatenate(
         [np.zeros((len(line), 1), dtype=np.int64), 1 + tracked(masses_from(kept))], axis=1
     )[:, :count]
-    codes = verdicts_from(kept, radius, values, batch.real, batch.hermitian)
+    codes = verdicts_from(kept, radius, values, real, hermitian)
     masses = masses_from(kept)
     chosen = order[:, 1:] - 1
     verdicts = np.take_along_axis(codes, chosen, axis=1)
@@ -122,6 +124,31 @@ def masses_along(
         cutoff=level,
         fixed=others,
     )
+
+
+Solved = tuple[NDArray[Any], NDArray[np.float64], bool, NDArray[np.bool_]]
+
+
+def _stacked(model: RingModel, cutoff: int, values: Mapping[str, NDArray[Any]], levels: int) -> Solved:
+    """Eigenvalues (M, n), radii (M, levels), whether T is real, where it is Hermitian: all at once."""
+    batch = truncate_batch(model, cutoff, values)
+    found, right, left = batch.solved()
+    radius = batch_errors(batch, complete_levels(batch, found, right, left), levels)
+    return found, radius, batch.real, batch.hermitian
+
+
+def _one_by_one(model: RingModel, cutoff: int, values: Mapping[str, NDArray[Any]], levels: int) -> Solved:
+    """The same point by point, for links that mix irreps."""
+    points = max(len(array) for array in values.values())
+    truncations = [
+        truncate(model, cutoff, {name: array[min(i, len(array) - 1)] for name, array in values.items()})
+        for i in range(points)
+    ]
+    systems = [solve_dense(truncation) for truncation in truncations]
+    radius = np.array([eigenvalue_errors(t, s, levels) for t, s in zip(truncations, systems, strict=True)])
+    found = np.array([system.values.astype(complex) for system in systems])
+    real = all(truncation.real for truncation in truncations)
+    return found, radius, real, np.array([truncation.hermitian for truncation in truncations])
 
 
 GUARD = 4
@@ -139,7 +166,9 @@ def checked_path(name: str, grid: Any) -> NDArray[np.float64]:
     try:
         line = np.asarray(grid, dtype=float)
     except (TypeError, ValueError):
-        raise ParameterError(f"{name} = {grid!r} is no path of real numbers: give a list or an array.") from None
+        raise ParameterError(
+            f"{name} = {grid!r} is no path of real numbers: give a list or an array."
+        ) from None
     if line.ndim != 1 or not len(line):
         raise ParameterError(
             f"{name} has shape {line.shape}: give at least one value, in a one-dimensional list or array."
@@ -149,7 +178,7 @@ def checked_path(name: str, grid: Any) -> NDArray[np.float64]:
     steps = np.diff(line)
     if len(steps) and not ((steps > 0).all() or (steps < 0).all()):
         raise ParameterError(
-            f"{name} neither rises nor falls throughout, so that levels cannot be followed along it: sort its values, "
-            "each once."
+            f"{name} neither rises nor falls throughout, so that levels cannot be followed along it: "
+            "sort its values, each once."
         )
     return line

@@ -1,4 +1,4 @@
-"""Proof: enclosures of the leading eigenvalues and masses of the untruncated T, and what is real or complex."""
+"""Proof: enclosures of leading eigenvalues and masses of the untruncated T; what is real, what complex."""
 
 from __future__ import annotations
 
@@ -13,7 +13,7 @@ import flint
 import numpy as np
 
 from haarloom.algebra.labels import count_up_to
-from haarloom.exceptions import ConvergenceError, ParameterError
+from haarloom.exceptions import ParameterError
 from haarloom.numerics.ball_truncation import BallTruncation, ball_truncation
 from haarloom.numerics.ball_vectors import approximate_vectors
 from haarloom.numerics.balls import Interval, as_exact, exact_text, precision
@@ -204,14 +204,13 @@ def attempt(model: RingModel, values: Mapping[str, Any], levels: int, cutoff: in
         except ZeroDivisionError:
             enclosure = Enclosure((None,) * levels, False)
         found = _levels(truncation, enclosure)
-        return Certificate(
-            model, dict(values), found, enclosure.leading, _digits(found), cutoff, bits
-        )
+        return Certificate(model, dict(values), found, enclosure.leading, _digits(found), cutoff, bits)
 
 
 def _over_pieces(model: RingModel, values: Mapping[str, Any], levels: int, cutoff: int) -> Certificate:
     """Certificate for all points of a box: cut into pieces until every level is decided on each."""
-    open_boxes, closed = [dict(values)], []
+    open_boxes: list[dict[str, Any]] = [dict(values)]
+    closed: list[Certificate] = []
     while open_boxes:
         box = open_boxes.pop()
         found = attempt(model, box, levels, cutoff, 64)
@@ -239,7 +238,8 @@ def _hull(parts: tuple[CertifiedLevel, ...]) -> CertifiedLevel:
     reason = parts[0].reason if same else "it differs between parts of the interval"
     balls = [[getattr(part, name) for part in parts] for name in ("eigenvalue", "mass")]
     eigenvalue, mass = (
-        None if any(one is None for one in group) else reduce(lambda a, b: a.union(b), group) for group in balls
+        None if any(one is None for one in group) else reduce(lambda a, b: a.union(b), group)
+        for group in balls
     )
     counts = max(part.count for part in parts)
     return CertifiedLevel(eigenvalue, mass, parts[0].verdict if same else UNDECIDED, reason, counts)

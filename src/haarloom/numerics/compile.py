@@ -80,14 +80,14 @@ class CompiledTransfer:
         return np.asarray(result)
 
     def unsymmetric(self, **values: Any) -> NDArray[Any]:
-        """K W at the given values, shape broadcast(values) + (n, n): similar to T, and free of matrix roots."""
+        """K W at the given values, shape broadcast(values) + (n, n): similar to T, free of matrix roots."""
         checked = checked_values(self.model, values)
         kernel = self.link(checked)
         site = self.site(checked)
         return np.asarray(kernel[..., :, None] * site if self.model.link.diagonal else kernel @ site)
 
     def link(self, values: Mapping[str, Any]) -> NDArray[Any]:
-        """k_r, shape broadcast(link values) + (n,); the kernel, (n, n) last, for a coupling that is not diagonal."""
+        """k_r, shape broadcast(link values) + (n,); for a link that mixes irreps the kernel, (n, n) last."""
         link = self.model.link
         if link.diagonal:
             return np.asarray(link.coefficients_at(self.basis, values)[0])

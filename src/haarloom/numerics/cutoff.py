@@ -54,16 +54,20 @@ def closing_cutoff(model: RingModel, levels: int, values: Mapping[str, Any]) -> 
     norm = float(np.max(model.site.norm_bound(values)))
     wanted = weakest * max(mean, 1e-3 * norm) / (3 * norm)
     cutoff = first
-    while float(np.max(model.link.largest_outside(cutoff, values))) > wanted:
+    while _outside(model, cutoff, values) > wanted:
         cutoff += 1
         if count_up_to(rank, cutoff) > LARGEST:
             raise ConvergenceError(
                 f"the truncation bound does not close at {dict(values)}: beyond {LARGEST:,} irreps "
-                f"|k_r| still reaches {float(np.max(model.link.largest_outside(cutoff - 1, values))):.2g}, so that "
-                "what is cut off could hold a leading level. Give cutoff=K for the spectrum of the "
+                f"|k_r| still reaches {_outside(model, cutoff - 1, values):.2g}, so that what"
+                "  is cut off could hold a leading level. Give cutoff=K for the spectrum of the "
                 "truncated T, whose error then stays unknown, or move towards stronger coupling."
             )
     return cutoff
+
+
+def _outside(model: RingModel, cutoff: int, values: Mapping[str, Any]) -> float:
+    return float(np.max(model.link.largest_outside(cutoff, values)))
 
 
 def automatic_truncation(
@@ -89,7 +93,7 @@ def automatic_truncation(
             raise ConvergenceError(
                 f"the truncation error is still {worst:.1e} with {truncation.size:,} irreps (cutoff "
                 f"{truncation.cutoff}) at {dict(values)}, above the tolerance {tolerance:.0e}: give cutoff= "
-                "to accept it (spectrum(...).error then says what is known), or move towards stronger coupling."
+                "to accept it (its error then says what is known), or move towards stronger coupling."
             )
 
 

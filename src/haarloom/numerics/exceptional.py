@@ -90,7 +90,12 @@ class ExceptionalPoint:
 
 @single_threaded
 def exceptional_points(
-    model: RingModel, parameter: str, between: tuple[Any, Any], levels: int = 4, samples: int = 65, **values: Any
+    model: RingModel,
+    parameter: str,
+    between: tuple[Any, Any],
+    levels: int = 4,
+    samples: int = 65,
+    **values: Any,
 ) -> tuple[FloatMerger, ...]:
     """All mergers among the leading levels on a line that a grid of samples shows, in double precision.
 
@@ -156,14 +161,16 @@ def exceptional_point(
         For an unknown parameter or an empty interval.
     """
     exact = {name: as_exact(name, value) for name, value in values.items()}
-    plain = {name: float(value) if isinstance(value, Fraction) else value for name, value in exact.items()}
+    plain: dict[str, Any] = {
+        name: float(value) if isinstance(value, Fraction) else value for name, value in exact.items()
+    }
     candidates = exceptional_points(model, parameter, between, level + 2, **plain)
     mine = [merger for merger in candidates if merger.level == level]
     if not mine:
         seen = ", ".join(f"level {m.level} at {m.value:.6g}" for m in candidates) or "none at all"
         raise ConvergenceError(
-            f"level {level} merges with the next one nowhere for {parameter} between {between[0]} and {between[1]} "
-            f"(mergers seen: {seen}): widen the interval, or ask for another level."
+            f"level {level} merges with the next one nowhere for {parameter} between {between[0]} and "
+            f"{between[1]} (mergers seen: {seen}): widen the interval, or ask for another level."
         )
     merger = mine[0]
     cutoff = sufficient_cutoff(model, [{**plain, parameter: merger.value}], level + 2) + 1
@@ -181,14 +188,23 @@ def _line(
 ) -> tuple[float, float, dict[str, Any]]:
     if parameter not in parameter_names(model):
         raise ParameterError(
-            f"{parameter!r} is no parameter of this model, which has {', '.join(parameter_names(model)) or 'none'}."
+            f"{parameter!r} is no parameter of this model, which has "
+            f"{', '.join(parameter_names(model)) or 'none'}."
         )
-    start, stop = (float(as_exact(parameter, end)) for end in between)
+    start, stop = (float(plain_end(parameter, end)) for end in between)
     if not start < stop:
         raise ParameterError(f"between = {between!r} is empty: give the smaller end first.")
     fixed = plain_numbers(checked_values(model, {**values, parameter: start}))
     fixed.pop(parameter)
     return start, stop, fixed
+
+
+def plain_end(parameter: str, end: Any) -> Fraction:
+    """An end of a line as an exact real number."""
+    exact = as_exact(parameter, end)
+    if not isinstance(exact, Fraction):
+        raise ParameterError(f"{parameter} = {end!r} is no end of a line: give a real number.")
+    return exact
 
 
 def _refined(
@@ -198,7 +214,10 @@ def _refined(
     bits = ceil(digits * log(10, 2)) * 2 + 128
     with precision(bits):
         value, level = flint.arb(merger.value), flint.arb(merger.eigenvalue)
-        column, row = _padded(merger.bordered.left, cutoff, model), _padded(merger.bordered.right, cutoff, model)
+        column, row = (
+            _padded(merger.bordered.left, cutoff, model),
+            _padded(merger.bordered.right, cutoff, model),
+        )
         goal = flint.arb(10) ** (-digits - 6)
         for _ in range(40):
             step_level, step_value = _newton_step(model, parameter, exact, cutoff, value, level, column, row)
@@ -315,7 +334,10 @@ def _changes_between(
     """
     bits = 2 * ceil(digits * log(10, 2)) + 96
     verdicts = [
-        {found.verdict for found in attempt(model, {**exact, parameter: end}, level + 2, cutoff, bits).levels[level:]}
+        {
+            found.verdict
+            for found in attempt(model, {**exact, parameter: end}, level + 2, cutoff, bits).levels[level:]
+        }
         for end in ends
     ]
     if {frozenset(v) for v in verdicts} != {frozenset({"real"}), frozenset({"complex pair"})}:

@@ -42,7 +42,9 @@ def certificate_text(certificate: Certificate) -> str:
 
     lines = [f"Proven for the untruncated T at {values_text(certificate.values)}:"]
     for number, level in enumerate(certificate.levels[1:], start=1):
-        lines.append(f"  m_{number} = {_ball_text(level.mass, certificate.digits)}: {level.verdict} ({level.reason})")
+        lines.append(
+            f"  m_{number} = {_ball_text(level.mass, certificate.digits)}: {level.verdict} ({level.reason})"
+        )
     lines.append(f"  {_completeness(certificate)}")
     return "\n".join(lines)
 
@@ -66,7 +68,8 @@ def _completeness(certificate: Certificate) -> str:
         if certificate.leading
         else f"That no other eigenvalue is larger than the last of these {count} is not shown"
     )
-    return f"{shown} (basis to cutoff {certificate.cutoff}, {certificate.bits} bits, {certificate.digits} decimal places)."
+    basis = f"basis to cutoff {certificate.cutoff}, {certificate.bits} bits"
+    return f"{shown} ({basis}, {certificate.digits} decimal places)."
 
 
 def _ball_text(mass: Any, digits: int) -> str:

@@ -10,8 +10,8 @@ needs no eigen-solver at all.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from dataclasses import dataclass, replace
+from itertools import pairwise
 from typing import Any
 
 import numpy as np
@@ -155,15 +155,11 @@ def _groups(sizes: NDArray[np.float64], levels: int) -> tuple[tuple[slice, ...],
     if last is None:
         return (), np.inf
     bounds = [0, *(end for end in ends if end <= last)]
-    return tuple(slice(a, b) for a, b in _pairs(bounds)), float(ratios[last - 1])
-
-
-def _pairs(bounds: list[int]) -> Iterator[tuple[int, int]]:
-    return zip(bounds[:-1], bounds[1:], strict=True)
+    return tuple(slice(a, b) for a, b in pairwise(bounds)), float(ratios[last - 1])
 
 
 def _in_gauge(right: NDArray[Any], real: bool) -> NDArray[Any] | None:
-    """Subspace bases with Qᴴ V = 1 for one Q, as rows: shape (nodes, s, n); None where that is ill-conditioned."""
+    """Subspace bases with Qᴴ V = 1 for one Q, as rows (nodes, s, n); None where that is ill-conditioned."""
     gauge = _orthonormal(right[len(right) // 2], real)
     overlap = gauge.conj().T @ right
     if not np.isfinite(overlap).all() or np.linalg.cond(overlap).max() > 1e9:

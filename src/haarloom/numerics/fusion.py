@@ -112,7 +112,9 @@ def _orbits(support: tuple[Irrep, ...]) -> tuple[list[tuple[int, ...]], Any]:
     orbits = sorted({weight for system in systems for weight in system})
     number = {weight: place for place, weight in enumerate(orbits)}
     entries = [(c, number[w], count) for c, system in enumerate(systems) for w, count in system.items()]
-    rows, columns, counts = (np.array(list(column)) for column in zip(*entries, strict=True)) if entries else ([],) * 3
+    rows, columns, counts = (
+        (np.array(list(column)) for column in zip(*entries, strict=True)) if entries else ([],) * 3
+    )
     shape = (len(support), len(orbits))
     return orbits, sparse.csr_array((np.asarray(counts, dtype=float), (rows, columns)), shape=shape)
 

@@ -93,7 +93,9 @@ def _single(
 
 def _size(array: NDArray[Any]) -> NDArray[np.float64]:
     flat = array.reshape(len(array), -1)
-    return np.asarray(np.sqrt(np.einsum("pi,pi->p", flat, flat.conj() if np.iscomplexobj(flat) else flat).real))
+    return np.asarray(
+        np.sqrt(np.einsum("pi,pi->p", flat, flat.conj() if np.iscomplexobj(flat) else flat).real)
+    )
 
 
 def _inverse(matrix: NDArray[Any]) -> NDArray[Any]:
@@ -188,7 +190,9 @@ def _reach(
     return np.where(alone < others[:, 0] / 2, alone, together)
 
 
-def _resolvent(distance: NDArray[np.float64], departure: NDArray[np.float64], order: int) -> NDArray[np.float64]:
+def _resolvent(
+    distance: NDArray[np.float64], departure: NDArray[np.float64], order: int
+) -> NDArray[np.float64]:
     total = term = 1 / distance
     for _ in range(1, order):
         term = term * departure[:, None] / distance
@@ -216,6 +220,6 @@ def _left_over(
     groups: list[GroupNumbers], margins: Margins, room: NDArray[np.float64], spare: NDArray[np.float64]
 ) -> NDArray[np.float64]:
     """The levels left out, as one block with the norms of the whole rim."""
-    projector = 1 + sum(group.left * group.right for group in groups)
+    projector = np.sum([group.left * group.right for group in groups], axis=0) + 1.0
     coupling = (margins.rim**2)[:, None] / room + margins.noise[:, None]
     return np.asarray(coupling * projector[:, None] / spare)

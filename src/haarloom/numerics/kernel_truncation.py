@@ -1,8 +1,8 @@
 """T for a link weight that mixes irreps: K W, cut at Σ a_i ≤ K.
 
-With P the basis and K = P K P + R, ‖R‖ ≤ ρ, the non-zero eigenvalues of (P K P) W are those of the
-square matrix P K W P; its left vectors go on beyond the basis as yᵀ K W/λ. R W shifts an eigenvalue by at
-most ρ ‖W‖ times the condition number of the whole vectors.
+With P the basis and K = P K P + R, ‖R‖ ≤ ρ, all that K W adds to A = P K P W P is small but for what leads
+from beyond the basis into it. Hence λ is an eigenvalue of A + E with ‖E‖ ≤ ε + ‖K‖‖W‖ ε/(|λ| − ε), ε = ρ‖W‖;
+and because |λ| ≤ ‖K‖‖W‖ + ε, the whole is at most ε (2‖K‖‖W‖ + ε)/(|λ| − ε): the form of a coupling.
 """
 
 from __future__ import annotations
@@ -41,11 +41,11 @@ class KernelTruncation(Truncation):
     kernel_norm: float = 0.0
 
     @property
-    def mirrored(self) -> bool:  # type: ignore[override]
+    def mirrored(self) -> bool:
         return False
 
     @property
-    def hermitian(self) -> bool:  # type: ignore[override]
+    def hermitian(self) -> bool:
         return False
 
     @property
@@ -72,16 +72,12 @@ class KernelTruncation(Truncation):
         return 8 * EPS * float(np.linalg.norm(self.product)) + self.input_error
 
     def coupling(self, right: NDArray[Any], left: NDArray[Any]) -> tuple[NDArray[Any], NDArray[Any]]:
-        """What R W does to each vector, in the form of a coupling: products of norms, √(ρ‖W‖|λ|) each."""
-        size = np.abs((left * self.apply(right)).sum(axis=0))
-        share = np.sqrt(self.outer_norm * size)
-        with np.errstate(divide="ignore", invalid="ignore"):
-            beyond = np.sqrt(1 + (self.strength / size) ** 2)
-            down = np.linalg.norm(left, axis=0) * np.where(share > 0, beyond * share, 0.0)
-        return np.linalg.norm(right, axis=0) * share, down
+        """Norms of the vectors, times the square root of ε (2‖K‖‖W‖ + ε)."""
+        share = np.sqrt(self.outer_norm * (2 * self.strength + self.outer_norm))
+        return np.linalg.norm(right, axis=0) * share, np.linalg.norm(left, axis=0) * share
 
     @property
-    def rim_norm(self) -> float:  # type: ignore[override]
+    def rim_norm(self) -> float:
         return self.outer_norm
 
 
@@ -109,7 +105,7 @@ def truncate_kernel(model: RingModel, cutoff: int, values: Mapping[str, Any]) ->
         outer=cutoff,
         root=ones,
         phase=ones,
-        action=_Matrix(size, matrix),
+        action=_Matrix(size, size, matrix),
         site=(support, found, site_errors),
         norm=norm,
         outside=outside,
@@ -126,11 +122,8 @@ class _Matrix:
     """W inside the basis as a dense matrix."""
 
     size: int
+    outer_size: int
     matrix: NDArray[Any]
-
-    @property
-    def outer_size(self) -> int:
-        return self.size
 
     def apply(self, kets: NDArray[Any]) -> NDArray[Any]:
         return np.asarray(self.matrix @ kets)

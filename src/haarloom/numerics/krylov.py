@@ -121,7 +121,7 @@ def _without_gaps(
         if np.abs(size[0]) <= last * (1 + 1e-2):
             return values, vectors
         start = np.real(extra[:, 0]) + np.random.default_rng(attempt).standard_normal(operator.shape[0])
-        more, columns = _arpack(truncation, probe, wanted, start.astype(dtype))
+        columns = _arpack(truncation, probe, wanted, start.astype(dtype))[1]
         enlarged, _ = np.linalg.qr(np.concatenate([vectors, columns], axis=1))
         small = enlarged.conj().T @ (operator @ enlarged)
         values, inner = np.linalg.eigh(small) if truncation.hermitian else np.linalg.eig(small)
@@ -142,9 +142,7 @@ def _orthonormal(truncation: Truncation, values: NDArray[Any], vectors: NDArray[
     return np.linalg.qr(vectors)[0]
 
 
-def _assembled(
-    truncation: Truncation, values: NDArray[Any], right: NDArray[Any], levels: int
-) -> EigenSystem:
+def _assembled(truncation: Truncation, values: NDArray[Any], right: NDArray[Any], levels: int) -> EigenSystem:
     order = spectral_order(values)
     count = clean_cut(values[order], levels, levels + GUARD)
     bound = float(np.abs(values[order[count - 1 : count + 1]]).min()) if count < len(order) else 0.0
@@ -172,9 +170,7 @@ def _dual_basis(left: NDArray[Any], right: NDArray[Any]) -> NDArray[Any]:
     return np.asarray(left @ np.linalg.pinv(right.T @ left))
 
 
-def _transposed_vectors(
-    truncation: Truncation, values: NDArray[Any], right: NDArray[Any]
-) -> NDArray[Any]:
+def _transposed_vectors(truncation: Truncation, values: NDArray[Any], right: NDArray[Any]) -> NDArray[Any]:
     """Left vectors where k_r̄ ≠ k_r: eigenvectors of Tᵀ = Φ S J W J S, solved like T itself."""
     from scipy.sparse.linalg import LinearOperator
 

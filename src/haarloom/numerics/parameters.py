@@ -58,7 +58,7 @@ def _numbers(name: str, given: Any) -> NDArray[Any]:
         array = array.astype(complex if array.dtype.kind == "c" else float)
     except (TypeError, ValueError, OverflowError):
         raise ParameterError(
-            f"{name} = {given!r} is no number: give an int, a float, a fraction, a complex number or an array of them."
+            f"{name} = {given!r} is no number: give a real or complex number, or an array of them."
         ) from None
     if not np.isfinite(array).all():
         raise ParameterError(f"{name} = {given!r} is not finite: give finite numbers only.")

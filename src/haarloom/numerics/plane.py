@@ -1,4 +1,4 @@
-"""All points of a rectangle in parameter space on one basis: from warm starts where they hold, else densely."""
+"""All points of a rectangle in parameter space on one basis: from warm starts where they hold, or densely."""
 
 from __future__ import annotations
 
@@ -127,8 +127,11 @@ def solve_plane(plane: Plane) -> PlaneLevels:
     rows, columns = plane.shape
     if rows * columns <= FEW_POINTS:
         first, second = np.repeat(plane.axes[0], columns), np.tile(plane.axes[1], rows)
-        found = (part.reshape(rows, columns, -1) for part in dense_points(plane, first, second))
-        return PlaneLevels(*found, *_marks(plane, np.ones((rows, columns), dtype=bool)))
+        values, radius, verdicts = dense_points(plane, first, second)
+        shape = (rows, columns, -1)
+        everywhere = _marks(plane, np.ones((rows, columns), dtype=bool))
+        parts = values.reshape(shape), radius.reshape(shape), verdicts.reshape(shape)
+        return PlaneLevels(*parts, *everywhere)
     warm = levels_from_frames(plane)
     if isinstance(warm, tuple):
         values, radius, verdicts = warm
@@ -171,7 +174,9 @@ def suffices(plane: Plane, first: NDArray[np.float64], second: NDArray[np.float6
 def _joined(plane: Plane, parts: list[PlaneLevels]) -> PlaneLevels:
     axis = 0 if parts[0].values.shape[0] < plane.shape[0] else 1
     names = ("values", "radius", "verdicts", "cutoff", "dense")
-    return PlaneLevels(*(np.concatenate([getattr(part, name) for part in parts], axis=axis) for name in names))
+    return PlaneLevels(
+        *(np.concatenate([getattr(part, name) for part in parts], axis=axis) for name in names)
+    )
 
 
 def _marks(plane: Plane, dense: NDArray[np.bool_]) -> tuple[NDArray[np.int32], NDArray[np.bool_]]:

@@ -116,7 +116,10 @@ def _by_rows(
             vectors.reshape(-1, count, size),
             images[:, :, :size],
             images[:, :, size:],
-            (None if table.positive else np.repeat(table.phase[some, None, :size], columns, axis=0), table.mirror),
+            (
+                None if table.positive else np.repeat(table.phase[some, None, :size], columns, axis=0),
+                table.mirror,
+            ),
             table.margins(some),
             np.tile(table.hermitian, number) & np.repeat((table.phase[some] > 0).all(axis=1), columns),
             table.real,

@@ -28,4 +28,7 @@ def perron_frobenius(truncation: Truncation) -> tuple[bool, str]:
             f"All elements of T are ≥ 0 but its pattern falls into {parts} parts: λ_0 is real and "
             "positive, though not simple by Perron and Frobenius alone."
         )
-    return True, "λ_0 is real, positive and simple: all elements of T are ≥ 0 and connected (Perron, Frobenius)."
+    return (
+        True,
+        "λ_0 is real, positive and simple: all elements of T are ≥ 0 and connected (Perron, Frobenius).",
+    )

@@ -1,4 +1,4 @@
-"""Rational functions of one symbol over the rationals, with FLINT's polynomials: fast where gcds are needed all the time."""
+"""Rational functions of one symbol over the rationals, with FLINT's polynomials for their gcds."""
 
 from __future__ import annotations
 
@@ -8,7 +8,7 @@ from typing import Any
 import flint
 import sympy
 
-__all__ = ["RationalFunctions", "Ratio"]
+__all__ = ["Ratio", "RationalFunctions"]
 
 
 @dataclass(frozen=True, eq=False)

@@ -109,8 +109,8 @@ def scan(
             run.save()
             done = int(table["done"].values.sum())
             warnings.warn(
-                f"interrupted: {done:,} of {grid.points:,} points are done; repeat the call with the same file=, "
-                "or with resume= this result, to go on.",
+                f"interrupted: {done:,} of {grid.points:,} points are done; repeat the call with the same "
+                "file=, or with resume= this result, to go on.",
                 stacklevel=2,
             )
     run.save()

@@ -48,7 +48,11 @@ def empty_table(grid: ScanGrid) -> xarray.Dataset:
         ),
         "ground_real": (points, np.full(grid.shape, np.nan), {"long_name": "Re λ_0"}),
         "ground_imaginary": (points, np.full(grid.shape, np.nan), {"long_name": "Im λ_0"}),
-        "cutoff": (points, np.full(grid.shape, -1, dtype=np.int32), {"long_name": "K of the basis Σ a_i ≤ K"}),
+        "cutoff": (
+            points,
+            np.full(grid.shape, -1, dtype=np.int32),
+            {"long_name": "K of the basis Σ a_i ≤ K"},
+        ),
         "done": (points, np.zeros(grid.shape, dtype=np.int8), {"long_name": "1 where the point was solved"}),
     }
     coordinates = {name: (name, axis) for name, axis in zip(grid.names, grid.axes, strict=True)}
@@ -84,7 +88,7 @@ def _model_text(grid: ScanGrid) -> str:
 def fill(table: xarray.Dataset, grid: ScanGrid, result: ChunkResult) -> None:
     """Write the result of a chunk into the arrays of the table."""
     index = result.chunk.index(grid)
-    parts = {
+    parts: dict[str, Any] = {
         "mass_real": result.masses.real,
         "mass_imaginary": result.masses.imag,
         "error": result.error,
@@ -105,7 +109,7 @@ def fill(table: xarray.Dataset, grid: ScanGrid, result: ChunkResult) -> None:
 
 
 def save_scan(table: xarray.Dataset, path: str | os.PathLike[str]) -> Path:
-    """Write a scan to NetCDF: beside the target first, then into its place, so that no file is ever half written."""
+    """Write a scan to NetCDF, beside the target first, then into its place: never half a file."""
     target = Path(path)
     beside = target.with_name(f".{target.name}.{os.getpid()}.part")
     try:
@@ -133,8 +137,8 @@ def read_scan(path: str | os.PathLike[str]) -> xarray.Dataset:
         raise
     except Exception as problem:
         raise DocumentError(
-            f"{path} cannot be read as NetCDF ({type(problem).__name__}): it is damaged or another kind of file. "
-            "It was left as it is; give another file name, or move it away to start afresh."
+            f"{path} cannot be read as NetCDF ({type(problem).__name__}): it is damaged or another kind of "
+            "file. It was left as it is; give another file name, or move it away to start afresh."
         ) from None
     if table.attrs.get("format") != FORMAT or not {"mass_real", "error", "done"} <= set(table.data_vars):
         raise DocumentError(

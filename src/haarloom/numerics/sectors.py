@@ -1,7 +1,8 @@
-"""Invariant subspaces that are known beforehand: parts of the pattern, and the two parities under conjugation."""
+"""Invariant subspaces known beforehand: parts of the pattern, and the two parities under conjugation."""
 
 from __future__ import annotations
 
+from itertools import pairwise
 from math import gcd
 from typing import Any
 
@@ -21,7 +22,8 @@ MIXED = 2000
 def component_labels(truncation: Truncation) -> tuple[int, NDArray[np.int64]]:
     """Number of parts that T does not connect, and the part of each irrep, shape (n,).
 
-    An irrep with k_r = 0 is a part of its own. Read off the pattern for an action by fusion; else from the N-alities that W carries.
+    An irrep with k_r = 0 is a part of its own. Read off the pattern where there is one; else from the
+    N-alities that W carries.
     """
     from scipy import sparse
     from scipy.sparse.csgraph import connected_components
@@ -39,7 +41,10 @@ def component_labels(truncation: Truncation) -> tuple[int, NDArray[np.int64]]:
         return int(parts), np.asarray(labels, dtype=np.int64)
     irreps, weights, errors = truncation.site
     order = truncation.rank + 1
-    step = gcd(order, *(irrep.nality for irrep, w, error in zip(irreps, weights, errors, strict=True) if abs(w) > error))
+    step = gcd(
+        order,
+        *(irrep.nality for irrep, w, error in zip(irreps, weights, errors, strict=True) if abs(w) > error),
+    )
     labels = label_array(truncation.rank, truncation.cutoff)
     classes, part = np.unique(labels @ np.arange(1, order) % step, return_inverse=True)
     return len(classes), np.asarray(part, dtype=np.int64)
@@ -58,13 +63,15 @@ def sectors(truncation: Truncation) -> list[Any]:
     order = np.argsort(labels, kind="stable")
     bounds = np.searchsorted(labels[order], np.arange(parts + 1))
     found = []
-    for start, stop in zip(bounds[:-1], bounds[1:], strict=True):
+    for start, stop in pairwise(bounds.tolist()):
         members = order[start:stop]
         if split and labels[mirror[members[0]]] == labels[members[0]]:
             found += _parities(members, mirror, truncation.size)
         else:
             places = (members, np.arange(len(members)))
-            found.append(sparse.csc_array((np.ones(len(members)), places), shape=(truncation.size, len(members))))
+            found.append(
+                sparse.csc_array((np.ones(len(members)), places), shape=(truncation.size, len(members)))
+            )
     return found
 
 

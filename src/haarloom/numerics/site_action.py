@@ -32,8 +32,13 @@ EPS = float(np.finfo(float).eps)
 class SiteAction(Protocol):
     """W as a linear map from n kets to the bras up to a wider cutoff."""
 
-    size: int
-    outer_size: int
+    @property
+    def size(self) -> int:
+        """Number n of kets."""
+
+    @property
+    def outer_size(self) -> int:
+        """Number of bras."""
 
     def apply(self, kets: NDArray[Any]) -> NDArray[Any]:
         """W on columns: (n, m) to (outer size, m)."""
@@ -131,7 +136,9 @@ def torus_action(
     from haarloom.torus.quadrature import grid_angles
 
     group = site.group
-    points = int(fft.next_fast_len(cutoff + outer + 2 * group.rank + max(reach, outer - cutoff) + 1, real=True))
+    points = int(
+        fft.next_fast_len(cutoff + outer + 2 * group.rank + max(reach, outer - cutoff) + 1, real=True)
+    )
     density = np.asarray(site.density_at(grid_angles(group, points), values), dtype=complex)
     shape = (points,) * group.rank
     density = np.broadcast_to(density, shape)

@@ -86,7 +86,8 @@ class Spectrum:
         """Proven enclosures for the untruncated T; see :func:`haarloom.numerics.certify.certify`."""
         from haarloom.numerics.certify import certify
 
-        return certify(self.model, digits=digits, levels=len(self.eigenvalues), **limits, **self.values)
+        values: dict[str, Any] = dict(self.values)
+        return certify(self.model, digits=digits, levels=len(self.eigenvalues), **limits, **values)
 
     def __repr__(self) -> str:
         lines = [f"Spectrum at {_point(self.values)} ({self.solver}, cutoff {self.cutoff})"]
@@ -193,7 +194,9 @@ def _status(truncation: Truncation, errors: NDArray[np.float64], chosen: bool) -
     size = f"cutoff {truncation.cutoff} ({truncation.size:,} irreps)"
     if truncation.outside == 0 and not np.isfinite(errors).all():
         rank = int(np.argmin(np.isfinite(errors)))
-        return f"{premise} No irrep beyond {size} has k_r ≠ 0: T has rank {rank}, further masses are infinite."
+        return (
+            f"{premise} No irrep beyond {size} has k_r ≠ 0: T has rank {rank}, further masses are infinite."
+        )
     if not np.isfinite(errors).all():
         level = int(np.argmin(np.isfinite(errors)))
         return (

@@ -90,5 +90,3 @@ def _joined(pieces: Iterator[Stretch]) -> Iterator[Stretch]:
         current = piece
     if current is not None:
         yield current
-
-

@@ -1,4 +1,4 @@
-"""T at one parameter point, cut at Σ a_i ≤ K: the block inside, what couples it outwards, and the norms outside.
+"""T at one parameter point, cut at Σ a_i ≤ K: the block inside, what couples it outwards, norms outside.
 
 With K^{1/2} = S and signs (or phases) Φ of k, the engine works on S W S Φ: it is similar to
 K^{1/2} W K^{1/2}, equals it where all k_r ≥ 0, and stays real where some k_r < 0.
@@ -111,7 +111,7 @@ class Truncation:
 
     def _site_matches(self, image: Any) -> bool:
         irreps, weights, errors = self.site
-        known = {irrep: weight for irrep, weight in zip(irreps, weights, strict=True)}
+        known = dict(zip(irreps, weights, strict=True))
         mirror = np.array([known.get(irrep.conjugate, 0.0) for irrep in irreps])
         return bool((np.abs(image(mirror) - weights) <= 8 * EPS * np.abs(weights) + 2 * errors).all())
 
@@ -196,7 +196,7 @@ class Truncation:
 
     @cached_property
     def rim_norm(self) -> float:
-        """Bound of ‖B‖ and ‖C‖: ‖W‖ √(k_rim k_out), the rim being the irreps that W takes out of the basis."""
+        """Bound of ‖B‖ and ‖C‖: ‖W‖ √(k_rim k_out); the rim are the irreps that W takes out of the basis."""
         rim = self.root[count_up_to(self.rank, self.cutoff - (self.outer - self.cutoff)) : self.size]
         edge = float(np.max(rim, initial=0.0)) * np.sqrt(self.outside)
         return self.norm * edge + self.tail * float(self.root.max()) * np.sqrt(self.outside_far)

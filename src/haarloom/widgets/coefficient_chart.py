@@ -41,7 +41,7 @@ class CoefficientChart(ipywidgets.Box):
     def _tension_figure(self) -> bqplot.Figure:
         self._casimir, self._tension = (
             Ruler("quadratic Casimir C₂(r)"),
-            Ruler("−ln kᵣ", upright=True, ticks=5),
+            Ruler("−ln kᵣ", upright=True, ticks=6),
         )
         scales = {"x": self._casimir.scale, "y": self._tension.scale}
         self._scaling = bqplot.Lines(

@@ -10,6 +10,7 @@ import ipywidgets
 import sympy
 import traitlets
 
+from haarloom.widgets.arguments import checked_mapping, checked_weight
 from haarloom.widgets.coefficient_chart import CoefficientChart
 from haarloom.widgets.copy_code import call, opening_lines, values_text, weight_lines
 from haarloom.widgets.fields import column, section
@@ -70,7 +71,8 @@ class LinkPane(Pane):
         values: Mapping[str, float] | None = None,
         ranges: Mapping[str, tuple[float, float]] | None = None,
     ) -> None:
-        self._ranges = dict(ranges or {})
+        checked_weight("link", weight)
+        self._ranges = checked_mapping("ranges", ranges)
         self._form = WeightForm("link", weight)
         self._sliders = ValueSliders(checked_start(weight, values), ranges_of(weight, self._ranges))
         self._formula = ipywidgets.HTMLMath().add_class("hl-formula")

@@ -10,6 +10,7 @@ import ipywidgets
 import traitlets
 
 from haarloom.exceptions import ParameterError
+from haarloom.widgets.arguments import checked_mapping, checked_model
 from haarloom.widgets.copy_code import call, model_lines, values_text
 from haarloom.widgets.dyes import dye
 from haarloom.widgets.element_pane import ElementPane
@@ -67,12 +68,12 @@ class Loom(Pane):
         spectrum: Mapping[str, Any] | None = None,
         ranges: Mapping[str, tuple[float, float]] | None = None,
     ) -> None:
-        start = checked_start(model, values)
+        start = checked_start(checked_model(model), values)
         common: dict[str, Any] = {"values": start, "ranges": ranges}
         self.link_pane = LinkPane(model.link, values=_part(start, model.link), ranges=ranges)
         self.site_pane = SitePane(model.site, values=_part(start, model.site), ranges=ranges)
-        self.element_pane = ElementPane(model, **(common | dict(matrix or {})))
-        self.spectrum_pane = SpectrumPane(model, **(common | dict(spectrum or {})))
+        self.element_pane = ElementPane(model, **(common | dict(checked_mapping("matrix", matrix))))
+        self.spectrum_pane = SpectrumPane(model, **(common | dict(checked_mapping("spectrum", spectrum))))
         panes: tuple[Pane, ...] = (self.link_pane, self.site_pane, self.element_pane, self.spectrum_pane)
         self._panes = dict(zip(STATIONS, panes, strict=True))
         self._strip = StationStrip(opened=_checked_stations(opened))

@@ -39,6 +39,11 @@ BY_DOMAIN: dict[str, Span] = {
     "nonnegative real": (0.0, 3.0, 1.0),
 }
 
+_COMPLEX_WAY_OUT = (
+    " For a complex one ask model.spectrum({name}=0.6+0.8j, …), or write {name} in real parameters: "
+    'a fugacity as "exp(I*theta)" has a slider for theta.'
+)
+
 OTHERWISE: Span = (0.0, 1.0, 0.1)
 
 
@@ -103,8 +108,6 @@ def _real(name: str, value: Any) -> float:
     except (TypeError, ValueError):
         number = float("nan")
     if not isfinite(number):
-        raise ParameterError(
-            f"{name} = {value!r}: a slider needs one finite real number. Complex values are for cells, "
-            f"e.g. model.spectrum({name}=0.6+0.8j, …); or write {name} as an expression in real parameters."
-        )
+        way_out = _COMPLEX_WAY_OUT.format(name=name) if isinstance(value, complex) else ""
+        raise ParameterError(f"{name} = {value!r}: a slider needs one finite real number.{way_out}")
     return number

@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Any
 import ipywidgets
 import traitlets
 
+from haarloom.widgets.arguments import checked_choice, checked_mapping, checked_weight
 from haarloom.widgets.copy_code import call, opening_lines, values_text, weight_lines
 from haarloom.widgets.fields import LABEL, column, section
 from haarloom.widgets.pane import Pane
@@ -21,6 +22,7 @@ from haarloom.widgets.torus_picture import QUANTITIES, picture_for
 from haarloom.widgets.weight_form import WeightForm, default_weight, kinds_of
 
 if TYPE_CHECKING:
+    from haarloom.algebra.group import SU
     from haarloom.actions.protocols import SiteWeight
 
 __all__ = ["SitePane"]
@@ -59,14 +61,17 @@ class SitePane(Pane):
         quantity: str = "|W|",
         ranges: Mapping[str, tuple[float, float]] | None = None,
     ) -> None:
-        self._ranges = dict(ranges or {})
+        checked_weight("site", weight)
+        checked_choice("quantity", quantity, QUANTITIES)
+        self._ranges = checked_mapping("ranges", ranges)
         self._forms: list[WeightForm] = []
         self._own_change = False
         self._cards = column()
         self._sliders = ValueSliders(checked_start(weight, values), ranges_of(weight, self._ranges))
         self._formula = ipywidgets.HTMLMath().add_class("hl-formula")
         self._sums = ipywidgets.HTMLMath().add_class("hl-formula")
-        self._picture = picture_for(weight.group)
+        self._canvas = column()
+        self._hang_picture(weight.group)
         super().__init__(ipywidgets.Box([self._controls(), self._shown()]))
         self.set_trait("quantity", quantity)
         self.weight = weight
@@ -78,7 +83,7 @@ class SitePane(Pane):
         self.first_drawing()
 
     def _controls(self) -> ipywidgets.Widget:
-        self._new = ipywidgets.Dropdown(options=list(kinds_of("site")), description="add", style=LABEL)
+        self._new = ipywidgets.Dropdown(options=list(kinds_of("site")), description="add", style={"description_width": "34px"})
         add = ipywidgets.Button(description="Add factor", tooltip="Multiply W by a factor of the chosen kind")
         add.on_click(self._add)
         row = ipywidgets.VBox([self._new, add]).add_class("hl-add")
@@ -89,8 +94,14 @@ class SitePane(Pane):
         self._choice = ipywidgets.Dropdown(
             options=list(QUANTITIES), description="picture of", style=LABEL, layout={"width": "220px"}
         )
+        return column(self._formula, self._sums, self._choice, self._canvas)
+
+    def _hang_picture(self, group: SU) -> None:
+        """The picture that suits the group, with its caption."""
+        self._pictured = group
+        self._picture = picture_for(group)
         caption = ipywidgets.HTML(escape(self._picture.caption)).add_class("hl-note")
-        return column(self._formula, self._sums, self._choice, self._picture.figure, caption)
+        self._canvas.children = [self._picture.figure, caption]
 
     def _lay_out(self) -> None:
         """One card for each factor of the present weight."""
@@ -130,6 +141,8 @@ class SitePane(Pane):
             self.refresh()
 
     def _draw(self) -> None:
+        if self._pictured != self.weight.group:
+            self._hang_picture(self.weight.group)
         self._picture.draw(self.weight, self.values, self.quantity)
         self._formula.value = f"$\\displaystyle {escape(self.weight.latex())}$"
         self._sums.value = characters_html(self.weight, self.values) + loops_html(self.weight)

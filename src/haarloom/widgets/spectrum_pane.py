@@ -4,15 +4,23 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from time import perf_counter
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, Literal
 
 import ipywidgets
 import numpy as np
 import traitlets
 
-from haarloom.exceptions import HaarloomError, ParameterError, SizeError
+from haarloom.exceptions import HaarloomError, ParameterError
 from haarloom.numerics.branches import MassBranches, masses_along
 from haarloom.numerics.faces import spectrum_html
+from haarloom.widgets.arguments import (
+    brisk_cutoff,
+    checked_choice,
+    checked_mapping,
+    checked_model,
+    checked_span,
+    scannable_cutoff,
+)
 from haarloom.widgets.copy_code import call, model_lines, number_text, values_text
 from haarloom.widgets.fields import LABEL, Field, column, section
 from haarloom.widgets.masses_chart import MassesChart
@@ -28,11 +36,11 @@ if TYPE_CHECKING:
 
 __all__ = ["SpectrumPane"]
 
+MOST_CUTOFF = 6
+"""The brisk cutoff where the group leaves the choice: masses of SU(3) to ten digits and more at t = 1."""
+
 POINTS = 200
 """Points of a scan: one every two or three pixels of the chart."""
-
-MOST_IRREPS = 250
-"""Largest basis for a scan: 200 matrices of that size take some seconds and 100 MB."""
 
 
 class SpectrumPane(Pane):
@@ -49,7 +57,8 @@ class SpectrumPane(Pane):
     span
         Its lowest and highest value.
     cutoff
-        K of the basis Σ a_i ≤ K, or None for the one that the truncation bound asks for.
+        K of the basis Σ a_i ≤ K, or None for the one that the truncation bound asks for. ``"brisk"``: the
+        largest K ≤ 6 with which a scan follows the slider (6 for SU(3), 5 for SU(4), 3 for SU(5)).
     levels
         Eigenvalues, the leading one included: one more than the masses on the screen.
     ranges
@@ -86,16 +95,22 @@ class SpectrumPane(Pane):
         values: Mapping[str, float] | None = None,
         scan: str | None = None,
         span: tuple[float, float] | None = None,
-        cutoff: int | None = 6,
+        cutoff: int | Literal["brisk"] | None = "brisk",
         levels: int = 6,
         ranges: Mapping[str, tuple[float, float]] | None = None,
     ) -> None:
-        self._ranges = dict(ranges or {})
+        group = checked_model(model).group
+        if cutoff == "brisk":
+            cutoff = brisk_cutoff(group, MOST_CUTOFF)
+        elif cutoff is not None:
+            cutoff = scannable_cutoff(group, cutoff, POINTS)
+        self._ranges = checked_mapping("ranges", ranges)
         self._scanned: tuple[Any, ...] | None = None
         bounds = ranges_of(model, self._ranges)
         start = checked_start(model, values)
-        scan = scan if scan is not None else _preferred_scan(start)
-        self._build(start, bounds, scan, span or bounds.get(scan, (0.0, 1.0)), cutoff)
+        scan = _preferred_scan(start) if scan is None else checked_choice("scan", scan, start)
+        span = bounds.get(scan, (0.0, 1.0)) if span is None else checked_span("span", span)
+        self._build(start, bounds, scan, span, cutoff)
         super().__init__(self._layout())
         self.set_trait("model", model)
         self.set_trait("levels", levels)
@@ -155,19 +170,14 @@ class SpectrumPane(Pane):
             return None
         if not word.isdigit():
             raise ParameterError(f"cutoff K = {text!r} is no truncation: give a whole number ≥ 0, or auto.")
-        size = self.model.group.count_irreps(int(word))
-        if size > MOST_IRREPS:
-            raise SizeError(
-                f"cutoff K = {word} means {size:,} irreps at each of {POINTS} points; a pane that follows "
-                f"sliders is limited to {MOST_IRREPS}. Take a smaller cutoff, or work with "
-                f"model.spectrum(cutoff={word}, …) in a cell."
-            )
-        return int(word)
+        return scannable_cutoff(self.model.group, int(word), POINTS)
 
-    def _follow_model(self, _: Any) -> None:
+    def _follow_model(self, change: Any) -> None:
         values = checked_start(self.model, None, keep=self.values)
         scan = self.scan if self.scan in values else _preferred_scan(values)
         with self.one_drawing():
+            if self.cutoff is not None and change.old.group != self.model.group:
+                self.cutoff = brisk_cutoff(self.model.group, MOST_CUTOFF)
             self._sliders.rebuild(values, ranges_of(self.model, self._ranges))
             self._scan_choice.options = _choices(values)
             self.scan = scan
@@ -270,9 +280,7 @@ def _read_span(text: str) -> tuple[float, float]:
         low, high = (float(part) for part in parts)
     except ValueError:
         raise ParameterError(f"{text!r} is no range: give two numbers, e.g. 0 … 2.") from None
-    if not (np.isfinite([low, high]).all() and low < high):
-        raise ParameterError(f"{text!r} is no range: the first number must be below the second, both finite.")
-    return low, high
+    return checked_span("from … to", (low, high))
 
 
 def _masses_table(spectrum: Spectrum) -> str:
