@@ -63,12 +63,14 @@ def heat(n: int, cutoff: int, t: Any) -> list[mpmath.mpf]:
 def wilson(n: int, cutoff: int, beta: Any, plaquettes: int = 1) -> list[mpmath.mpf]:
     """(w_r/w_0)^{N_t}, d_r w_r = Σ_m det I_{λ_j − j + i + m}(β/N) (DLMF 10.35; handbook formula)."""
     x = mp.mpf(beta) / n
+    reach = 24  # the determinants fall like x^{N|m|}/(m!)^N
+    bessel = [mp.besseli(order, x) for order in range(reach + 2 * cutoff + 2 * n)]
 
     def weight(labels: Labels) -> mpmath.mpf:
         rows = rows_of(labels)
         total = mp.mpf(0)
-        for m in range(-40, 41):
-            entries = [[mp.besseli(rows[j] - j + i + m, x) for j in range(n)] for i in range(n)]
+        for m in range(-reach, reach + 1):
+            entries = [[bessel[abs(rows[j] - j + i + m)] for j in range(n)] for i in range(n)]
             total += mp.det(mp.matrix(entries))
         return total / dimension(labels)
 

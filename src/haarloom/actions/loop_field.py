@@ -15,7 +15,7 @@ from haarloom.actions.base import refuse_group
 from haarloom.actions.coefficient_table import irrep_table
 from haarloom.actions.multiplicative import Factor, multiplicative_coefficients
 from haarloom.actions.parameters import Field, Parameter, Values, evaluate, exact_text
-from haarloom.actions.torus_site import TorusSite
+from haarloom.actions.torus_site import TorusSite, summed_tail
 from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
@@ -96,7 +96,11 @@ class LoopField(TorusSite):
         return np.asarray(np.exp(total) * (1 + 1e-12))
 
     def tail_bound(self, cutoff: int, values: Values) -> NDArray[Any]:
-        """Σ |w_c| d_c beyond the cutoff: proven, from the exponential series.
+        """Σ |w_c| d_c beyond the cutoff: proven, moderate shells summed and the rest by the series."""
+        return summed_tail(self, cutoff, values, self._series_tail)
+
+    def _series_tail(self, cutoff: int, values: Values) -> NDArray[np.float64]:
+        """Σ |w_c| d_c beyond the cutoff from the exponential series.
 
         With s the largest sum of labels among the fields, m factors reach at most m·s, and all of them
         together have Σ |w_c| d_c ≤ x^m/m!, x = Σ |h_r| d_r; the rest of that series is below its first term

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Any, ClassVar
 
 import numpy as np
@@ -14,7 +15,7 @@ from haarloom.actions.base import Site
 from haarloom.actions.multiplicative import Factor, multiplicative_coefficients
 from haarloom.actions.named_coefficient import NamedCoefficient
 from haarloom.actions.parameters import Field, Values, free_parameters
-from haarloom.actions.torus_site import TorusSite
+from haarloom.actions.torus_site import Point, TorusSite, each_point
 from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
@@ -157,9 +158,17 @@ def _finite_part(sites: Sequence[Site]) -> ClassFunction:
 
 
 def _absolute_sum(site: Site, values: Values) -> NDArray[Any]:
-    """Upper bound of Σ_c |w_c| d_c: low shells summed, the tail added."""
+    """Upper bound of Σ_c |w_c| d_c at each point of parameter space."""
+    shape, points = each_point(site, values)
+    return np.array([_absolute_sum_at(site, point) for point in points]).reshape(shape)
+
+
+@lru_cache(maxsize=256)
+def _absolute_sum_at(site: Site, point: Point) -> float:
+    """Low shells summed, the tail added."""
+    values = dict(point)
     cutoff = 2 * site.group.n
     irreps = site.group.irreps(cutoff)
     w, error = site.coefficients_at(irreps, values)
     dimensions = np.array([float(irrep.dimension) for irrep in irreps])
-    return np.asarray(((np.abs(w) + error) * dimensions).sum(axis=-1) + site.tail_bound(cutoff, values))
+    return float(((np.abs(w) + error) * dimensions).sum() + site.tail_bound(cutoff, values))

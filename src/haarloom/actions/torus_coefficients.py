@@ -56,12 +56,11 @@ class SampledFunction:
             If the irreps need a finer grid than fits.
         """
         points = self._first_grid(irreps)
-        dimensions = np.array([float(irrep.dimension) for irrep in irreps])
         coarse = self._sum(irreps, points)
         while True:
             points += points // 2
             fine = self._sum(irreps, points)
-            change, rounding = np.abs(fine - coarse), _ENOUGH * self._mean_size(points) * dimensions
+            change, rounding = np.abs(fine - coarse), _ENOUGH * self._size(points)
             if np.all(change <= rounding) or not self._fits(points + points // 2, len(irreps)):
                 return fine, change + rounding
             coarse = fine
@@ -98,8 +97,9 @@ class SampledFunction:
             total += values[piece] @ characters(irreps, angles[piece]).conj()
         return total
 
-    def _mean_size(self, points: int) -> float:
-        return float(np.abs(self._kept(points)) @ alcove_grid(self.group, points)[1])
+    def _size(self, points: int) -> float:
+        """(∫dP |f|²)^½, which bounds ∫ χ_c* f and its rounding (Cauchy and Schwarz, ∫|χ_c|² = 1)."""
+        return float(np.sqrt(np.abs(self._kept(points)) ** 2 @ alcove_grid(self.group, points)[1]))
 
     def _kept(self, points: int) -> NDArray[Any]:
         if points not in self._values:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from functools import lru_cache
 from typing import Any, ClassVar
 
@@ -11,17 +11,19 @@ from numpy.typing import NDArray
 from sympy import Expr
 
 from haarloom.actions.base import Site
+from haarloom.actions.multiplicative import multiplicative_coefficients
 from haarloom.actions.multiplicative_digits import digits_of
 from haarloom.actions.named_coefficient import NamedCoefficient
 from haarloom.actions.parameters import Values, evaluate
 from haarloom.actions.torus_coefficients import sampled_function
 from haarloom.algebra.irrep import Irrep
 
-__all__ = ["Point", "TorusSite", "each_point"]
+__all__ = ["Point", "TorusSite", "each_point", "summed_tail"]
 
 Point = tuple[tuple[str, complex], ...]
 
 _SAFETY = 1.25
+_LAST_SUMMED = {2: 40, 3: 14, 4: 8, 5: 6, 6: 4, 7: 3, 8: 3}
 _LAST_SHELL = {2: 120, 3: 36, 4: 12, 5: 7, 6: 5, 7: 4, 8: 3}
 
 
@@ -67,7 +69,21 @@ class TorusSite(Site):
         w = np.array([w for w, _ in pairs]).reshape((*shape, len(irreps)))
         error = np.array([error for _, error in pairs]).reshape((*shape, len(irreps)))
         real = np.all(np.abs(w.imag) <= error)
-        return (w.real if real else w), error
+        return self._below_noise(irreps, values, w.real if real else w, error)
+
+    def _below_noise(
+        self, irreps: Sequence[Irrep], values: Values, w: NDArray[Any], error: NDArray[np.float64]
+    ) -> tuple[NDArray[Any], NDArray[np.float64]]:
+        """Zero in place of rounding noise where |w_c| d_c ≤ the tail from its shell on says more."""
+        shells = np.array([sum(irrep.labels) for irrep in irreps], dtype=int)
+        dimensions = np.array([float(irrep.dimension) for irrep in irreps])
+        for shell in range(1, int(shells.max(initial=0)) + 1):
+            members = shells == shell
+            bound = np.asarray(self.tail_bound(shell - 1, values))[..., None] / dimensions[members]
+            better = bound < error[..., members]
+            w[..., members] = np.where(better, 0, w[..., members])
+            error[..., members] = np.where(better, bound, error[..., members])
+        return w, error
 
     def digits_of(self, irrep: Irrep, values: Mapping[str, Expr], digits: int) -> Expr | None:
         """w_c to any number of digits where W is a product over eigenvalues at real parameters, else None."""
@@ -88,6 +104,40 @@ class TorusSite(Site):
     def latex(self) -> str:
         """Its expansion in characters."""
         return r"W(P)=\sum_c w_c\,\chi_c(P)"
+
+
+def summed_tail(
+    site: TorusSite, cutoff: int, values: Values, proven: Callable[[int, Values], NDArray[np.float64]]
+) -> NDArray[np.float64]:
+    """Σ |w_c| d_c beyond the cutoff: moderate shells summed with their errors, a proven bound for the rest.
+
+    Parameters
+    ----------
+    site : TorusSite
+    cutoff : int
+    values : mapping
+    proven : callable
+        Takes a cutoff and values, returns a bound of the whole sum beyond that cutoff, loose or not.
+    """
+    last = _LAST_SUMMED[site.group.n]
+    if cutoff >= last:
+        return proven(cutoff, values)
+    shape, points = each_point(site, values)
+    rest = np.array([_summed_shells(site, point)[cutoff + 1 :].sum() for point in points]).reshape(shape)
+    return np.asarray(np.minimum(rest + proven(last, values), proven(cutoff, values)))
+
+
+@lru_cache(maxsize=1024)
+def _summed_shells(site: TorusSite, point: Point) -> NDArray[np.float64]:
+    """Σ (|w_c| + error) d_c for each shell up to the last one that is summed."""
+    irreps = site.group.irreps(_LAST_SUMMED[site.group.n])
+    factors = getattr(site, "factors", None)
+    if factors:
+        w, error = multiplicative_coefficients(factors, irreps, dict(point))
+    else:
+        w, error = sampled_function(site, "density_at", point).coefficients(irreps)
+    sizes = (np.abs(w) + error) * np.array([float(irrep.dimension) for irrep in irreps])
+    return np.asarray(np.bincount([sum(irrep.labels) for irrep in irreps], sizes), dtype=float)
 
 
 @lru_cache(maxsize=256)

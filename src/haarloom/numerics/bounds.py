@@ -71,7 +71,9 @@ def _radii(
         margin = room - radii
         inverse = _resolvent_bounds(blocks, level, centre, radii)
         # one row and one column for coupling and rounding together, by Cauchy and Schwarz
-        load = np.sqrt((up**2 / margin + right**2 * noise) * (down**2 / margin + left**2 * noise)) * inverse
+        strength = np.sqrt((up**2 / margin + right**2 * noise) * (down**2 / margin + left**2 * noise))
+        with np.errstate(invalid="ignore"):
+            load = np.nan_to_num(strength * inverse, nan=np.inf)
         closed = np.flatnonzero(load.sum(axis=0) < 1)
         if closed.size:
             errors[level] = radii[closed[0]]

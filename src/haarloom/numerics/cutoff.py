@@ -85,7 +85,8 @@ def automatic_truncation(
         truncation = truncate(model, cutoff, values)
         system = solve(truncation, levels)
         cut = eigenvalue_errors(truncation, system, levels, noise=0.0)
-        worst = float(np.max(mass_errors(system.values[:levels], cut), initial=float(cut[0])))
+        ground = float(cut[0] / np.abs(system.values[0]))
+        worst = float(np.max(mass_errors(system.values[:levels], cut), initial=ground))
         if worst <= tolerance or truncation.outside == 0:
             return truncation, system, eigenvalue_errors(truncation, system, levels)
         cutoff += max(1, cutoff // 6)
