@@ -116,3 +116,15 @@ def test_missing_values_and_unknown_properties() -> None:
         analyse_site(static_fermions(G, "z"))
     with pytest.raises(KeyError, match="known are"):
         analyse_site(static_fermions(G, "z"), z=0.1)["beautiful"]
+
+
+def test_accuracy_says_what_is_proven_and_what_is_measured() -> None:
+    assert analyse_link(wilson(G, "beta"), beta=1.0)["proven bounds"].holds is True
+    assert analyse_link(mixed_wilson(G, {"3": "b"}), b=1.0)["proven bounds"].holds is False
+    table = analyse_link(link_from_coefficients(G, {"1": 1, "3": "k"}), k=0.1)["proven bounds"]
+    assert "every other k_r is set to zero" in table.words
+    assert (
+        analyse_site(static_fermions(G, "z") * loop_field(G, {"8": "h"}), z=0.1, h=0.1)["proven bounds"].holds
+        is True
+    )
+    assert "measured by refining" in analyse_site(site_from(G, "exp(L*conj(L)/9)"))["proven bounds"].words

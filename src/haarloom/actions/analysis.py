@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from haarloom.actions.base import Link, Site
 from haarloom.actions.bosons import StaticBosons
+from haarloom.actions.coefficient_table import CoefficientTable
 from haarloom.actions.fermions import StaticFermions
 from haarloom.actions.heat_kernel import HeatKernel
 from haarloom.actions.parameters import Values, named_values
@@ -84,7 +85,9 @@ class WeightAnalysis:
 
     def _repr_html_(self) -> str:
         rows = [[s.name, _answer(s), s.words, s.basis] for s in self.statements]
-        return self.picture + table_html(["property", "holds", "what was found", "how"], rows, self.title)
+        return self.picture + table_html(
+            ["property", "holds", "what was found", "how"], rows, self.title, words=True
+        )
 
 
 def _answer(statement: Statement) -> str:
@@ -123,6 +126,7 @@ def analyse_site(site: Site, **values: complex) -> WeightAnalysis:
         _nalities(table),
         _particle_hole(site),
         _series(site),
+        _accuracy(site),
     )
     return WeightAnalysis(f"site weight: {site.kind}", point, statements, torus_picture(site, point))
 
@@ -149,6 +153,7 @@ def analyse_link(link: Link, **values: complex) -> WeightAnalysis:
         _decay(link, irreps, point),
         _casimir_scaling(link, point),
         _strong_radius(link),
+        _accuracy(link),
     )
     return WeightAnalysis(f"link weight: {link.kind}", point, statements, plaquette_picture(link, point))
 
@@ -310,6 +315,18 @@ def _particle_hole(site: Site) -> Statement:
         else:
             words.append(f"W at (z, z̄) equals (z z̄)^{power} times W at (1/z̄, 1/z)")
     return Statement("particle–hole", True, "; ".join(words) + ", since det_R P = 1.", "exact")
+
+
+def _accuracy(weight: Link | Site) -> Statement:
+    bounds = (
+        "Bounds on what a cutoff leaves out are proven."
+        if weight.bounds_proven
+        else ("Bounds on what a cutoff leaves out are estimates.")
+    )
+    words = " ".join(
+        [weight.accuracy, bounds, *([weight.note] if isinstance(weight, CoefficientTable) else [])]
+    )
+    return Statement("proven bounds", weight.bounds_proven, words, "exact")
 
 
 def _series(site: Site) -> Statement:

@@ -40,6 +40,8 @@ class _Weight:
 
     kind: ClassVar[str] = "custom"
     FIELDS: ClassVar[tuple[Field, ...]] = ()
+    accuracy: ClassVar[str] = "Exact expressions; floats carry a rounding allowance."
+    """How exact the coefficients are, in a sentence."""
     group: SU
 
     @property
@@ -94,6 +96,8 @@ class Link(_Weight):
     """Base of link weights, diagonal in the irreps unless a class says otherwise."""
 
     diagonal: ClassVar[bool] = True
+    bounds_proven: ClassVar[bool] = False
+    """Whether `largest_outside` is a theorem rather than an estimate."""
     plaquettes: int = 1
 
     def coefficient(self, irrep: Irrep) -> Expr:
@@ -203,6 +207,8 @@ class Site(_Weight):
     """Base of site weights; what is written here serves finite ones."""
 
     finite: ClassVar[bool] = True
+    bounds_proven: ClassVar[bool] = True
+    """Whether `norm_bound` and `tail_bound` are theorems rather than estimates."""
 
     def class_function(self) -> ClassFunction:
         """The exact class function."""

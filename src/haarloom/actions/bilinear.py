@@ -108,6 +108,7 @@ class BilinearCoupling(Link):
 
     kind: ClassVar[str] = "bilinear coupling"
     FIELDS: ClassVar[tuple[Field, ...]] = (_TABLE,)
+    bounds_proven: ClassVar[bool] = True
 
     @property
     def diagonal(self) -> bool:  # type: ignore[override]

@@ -84,6 +84,11 @@ class StaticBosons(TorusSite):
 
     kind: ClassVar[str] = "static bosons"
     FIELDS: ClassVar[tuple[Field, ...]] = (_Z, _ZBAR, COPIES, IRREP)
+    accuracy: ClassVar[str] = (
+        "Rational functions or Toeplitz determinants in the fundamental, else a transform with measured "
+        "error."
+    )
+    bounds_proven: ClassVar[bool] = True
 
     @property
     def factors(self) -> tuple[Factor, ...] | None:

@@ -75,6 +75,8 @@ class CoefficientTable(Link):
 
     kind: ClassVar[str] = "coefficient table"
     FIELDS: ClassVar[tuple[Field, ...]] = (_TABLE,)
+    accuracy: ClassVar[str] = "As exact as the table; what it lacks is zero."
+    bounds_proven: ClassVar[bool] = True
 
     @property
     def note(self) -> str:

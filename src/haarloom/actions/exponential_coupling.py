@@ -51,6 +51,8 @@ class ExponentialCoupling(Link):
 
     kind: ClassVar[str] = "exponential loop coupling"
     FIELDS: ClassVar[tuple[Field, ...]] = (LAM,)
+    accuracy: ClassVar[str] = "Power series in the coupling with a proven bound on the orders left out."
+    bounds_proven: ClassVar[bool] = True
     diagonal: ClassVar[bool] = False
     letter: ClassVar[str] = "k"
 

@@ -88,6 +88,7 @@ class StaticFermions(Site):
 
     kind: ClassVar[str] = "static fermions"
     FIELDS: ClassVar[tuple[Field, ...]] = (_Z, _ZBAR, COPIES, IRREP)
+    accuracy: ClassVar[str] = "Exact polynomials in the fugacities; floats with a bound on rounding."
 
     @property
     def factors(self) -> tuple[Factor, ...] | None:

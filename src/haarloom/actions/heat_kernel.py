@@ -81,6 +81,8 @@ class HeatKernel(Link):
 
     kind: ClassVar[str] = "heat kernel"
     FIELDS: ClassVar[tuple[Field, ...]] = (_T, PLAQUETTES)
+    accuracy: ClassVar[str] = "Exact exponentials; floats with a bound on rounding."
+    bounds_proven: ClassVar[bool] = True
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """Exact exp(−t C₂)."""

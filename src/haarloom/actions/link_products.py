@@ -112,6 +112,11 @@ class StackedLinks(Link):
         return sum(link.plaquettes for link in self.links)
 
     @property
+    def bounds_proven(self) -> bool:  # type: ignore[override]
+        """True if those of the weights below are."""
+        return all(link.bounds_proven for link in self.links)
+
+    @property
     def parameters(self) -> tuple[Symbol, ...]:
         """Free symbols of all strips."""
         return free_parameters(symbol for link in self.links for symbol in link.parameters)
@@ -159,6 +164,11 @@ class CoupledLink(Link):
     def plaquettes(self) -> int:  # type: ignore[override]
         """Plaquettes of the gauge action."""
         return self.gauge.plaquettes
+
+    @property
+    def bounds_proven(self) -> bool:  # type: ignore[override]
+        """True if those of the weights below are."""
+        return all(link.bounds_proven for link in (self.gauge,))
 
     @property
     def parameters(self) -> tuple[Symbol, ...]:

@@ -60,6 +60,7 @@ class LoopCoupling(Link):
 
     kind: ClassVar[str] = "loop coupling"
     FIELDS: ClassVar[tuple[Field, ...]] = (LAM,)
+    bounds_proven: ClassVar[bool] = True
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """1 for the trivial irrep, λ for F and F̄ (2λ for SU(2)), else 0."""

@@ -57,6 +57,10 @@ class LoopField(TorusSite):
 
     kind: ClassVar[str] = "loop field"
     FIELDS: ClassVar[tuple[Field, ...]] = (_FIELDS,)
+    accuracy: ClassVar[str] = (
+        "Toeplitz determinants for fields on F and its conjugate, else a transform with measured error."
+    )
+    bounds_proven: ClassVar[bool] = True
 
     def _expressions(self) -> list[Expr]:
         return [value for _, value in self.fields]

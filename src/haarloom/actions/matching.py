@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import TYPE_CHECKING, Literal
 
 import numpy as np
@@ -11,7 +12,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from haarloom.actions.pictures import line_picture, table_html
 from haarloom.algebra.irrep import Irrep
-from haarloom.exceptions import ConvergenceError, ParameterError
+from haarloom.exceptions import ConvergenceError, ParameterError, SizeError
 
 if TYPE_CHECKING:
     from haarloom.actions.base import Link
@@ -74,7 +75,8 @@ class MatchingCurve:
         picture = line_picture(
             self.x, [self.y], f"{self.first.kind}: {self.names[0]}", f"{self.second.kind}: {self.names[1]}"
         )
-        rows = [[f"{v:.8g}" for v in row] for row in zip(self.x, self.y, self.value, self.error, strict=True)]
+        columns = zip(self.x, self.y, self.value, self.error, strict=True)
+        rows = [[f"{x:.6g}", f"{y:.10g}", f"{value:.10g}", f"{e:.1e}"] for x, y, value, e in columns]
         return picture + table_html(
             [*self.names, self.observable, f"error of {self.names[1]}"], rows, self._title()
         )
@@ -176,13 +178,22 @@ def matching_coupling(
 
 def _bracket(gap: Callable[[float], float], value: float, link: Link, observable: str) -> tuple[float, float]:
     """Two neighbouring logarithms of the coupling between which the observable passes the value."""
+
+    def gap_or_nan(log: float) -> float:
+        try:
+            return gap(log)
+        except (ConvergenceError, SizeError):  # a coupling too extreme for this weight
+            return float("nan")
+
     logs = np.linspace(np.log(_LOW), np.log(_HIGH), 41).tolist()
-    gaps = [gap(log) for log in logs]
-    for i in range(len(logs) - 1):
-        if np.isfinite(gaps[i : i + 2]).all() and gaps[i] * gaps[i + 1] <= 0:
-            return logs[i], logs[i + 1]
+    before = gap_or_nan(logs[0])
+    for low, high in pairwise(logs):
+        after = gap_or_nan(high)
+        if np.isfinite(before) and np.isfinite(after) and before * after <= 0:
+            return low, high
+        before = after
     raise ConvergenceError(
         f"No coupling {link.parameters[0].name} of '{link.kind}' between {_LOW} and {_HIGH} has "
-        f"{observable} = {value:.6g}; "
-        "match at other couplings or with another observable."
+        f"{observable} = "
+        f"{value:.6g}; match at other couplings or with another observable."
     )

@@ -13,15 +13,20 @@ from numpy.typing import NDArray
 
 __all__ = ["heat_picture", "line_picture", "table_html"]
 
-_WIDTH, _HEIGHT, _LEFT, _BOTTOM, _TOP, _RIGHT = 420, 260, 64, 44, 14, 14
+_WIDTH, _HEIGHT, _SQUARE, _LEFT, _BOTTOM, _TOP, _RIGHT = 420, 260, 340, 64, 44, 14, 14
 _DASHES = ("none", "6 3", "2 3", "8 3 2 3")
 _BLUE, _RED = (42, 102, 184), (186, 44, 44)
 
 
-def table_html(head: Sequence[str], rows: Sequence[Sequence[str]], caption: str = "") -> str:
-    """An HTML table with every cell escaped."""
-    top = "".join(f"<th>{escape(cell)}</th>" for cell in head)
-    body = "".join("<tr>" + "".join(f"<td>{escape(cell)}</td>" for cell in row) + "</tr>" for row in rows)
+def table_html(
+    head: Sequence[str], rows: Sequence[Sequence[str]], caption: str = "", words: bool = False
+) -> str:
+    """An HTML table with every cell escaped, its columns to the left where they hold words."""
+    style = ' style="text-align:left"' if words else ""
+    top = "".join(f"<th{style}>{escape(cell)}</th>" for cell in head)
+    body = "".join(
+        "<tr>" + "".join(f"<td{style}>{escape(cell)}</td>" for cell in row) + "</tr>" for row in rows
+    )
     title = f"<caption>{escape(caption)}</caption>" if caption else ""
     return f"<table>{title}<tr>{top}</tr>{body}</table>"
 
@@ -46,19 +51,25 @@ def line_picture(
 
 
 def heat_picture(
-    values: NDArray[np.float64], corners: tuple[float, float, float, float], across: str, up: str
+    values: NDArray[np.float64],
+    corners: tuple[float, float, float, float],
+    across: str,
+    up: str,
+    outline: Sequence[tuple[float, float, str]] = (),
 ) -> str:
-    """A real function on a grid as an image in SVG text: blue where positive, red where negative, fainter
-    towards zero.
+    """A real function on a grid as an image in SVG text: blue where positive, red where negative, faint
+    near zero.
 
     Parameters
     ----------
     values : ndarray, shape (rows, columns)
         nan where nothing is shown; row 0 is at the bottom.
     corners : tuple
-        Left, right, bottom, top of the axes.
+        Left, right, bottom, top of the axes; one unit is as long across as up if they span a square.
+    outline : sequence of (x, y, name)
+        Corners of a closed line drawn on top, with their names.
     """
-    frame = _Frame(*corners)
+    frame = _Frame(*corners, side=_SQUARE)
     strength = np.nan_to_num(values) / (float(np.nanmax(np.abs(values))) or 1.0)
     pixels = np.zeros((*values.shape, 4), dtype=np.uint8)
     pixels[..., :3] = np.where(strength[..., None] < 0, _RED, _BLUE)
@@ -68,7 +79,12 @@ def heat_picture(
         f'<image x="{_LEFT}" y="{_TOP}" width="{frame.width}" height="{frame.height}" '
         f'preserveAspectRatio="none" href="data:image/png;base64,{image}"/>'
     )
-    return _svg(_WIDTH, _HEIGHT, f"map over {across} and {up}", body + frame.axes(across, up))
+    places = [(*frame.place(x, y), name) for x, y, name in outline]
+    line = " ".join(f"{x:.1f},{y:.1f}" for x, y, _ in places)
+    marks = f'<polygon points="{line}" fill="none" stroke="currentColor"/>' if places else ""
+    marks += "".join(_text(x, y - 5, name, "middle") for x, y, name in places)
+    width = frame.width + _LEFT + _RIGHT
+    return _svg(width, _SQUARE, f"map over {across} and {up}", body + marks + frame.axes(across, up))
 
 
 def _png(pixels: NDArray[np.uint8]) -> bytes:
@@ -83,13 +99,12 @@ def _png(pixels: NDArray[np.uint8]) -> bytes:
 
 
 class _Frame:
-    """The axes' rectangle and the map from numbers to places in it."""
+    """The axes' rectangle and the map from numbers to places in it; square where a side is given."""
 
-    width = _WIDTH - _LEFT - _RIGHT
-    height = _HEIGHT - _BOTTOM - _TOP
-
-    def __init__(self, left: float, right: float, low: float, high: float) -> None:
+    def __init__(self, left: float, right: float, low: float, high: float, side: int | None = None) -> None:
         self.left, self.right, self.low, self.high = left, right, low, high
+        self.height = (side or _HEIGHT) - _BOTTOM - _TOP
+        self.width = self.height if side else _WIDTH - _LEFT - _RIGHT
 
     def place(self, x: float, y: float) -> tuple[float, float]:
         across = (x - self.left) / (self.right - self.left)
@@ -99,13 +114,14 @@ class _Frame:
     def axes(self, across: str, up: str) -> str:
         size = f'x="{_LEFT}" y="{_TOP}" width="{self.width}" height="{self.height}"'
         marks = [f'<rect {size} fill="none" stroke="currentColor"/>']
+        bottom = _TOP + self.height
         for share in (0.0, 0.5, 1.0):
             x, y = self.left + share * (self.right - self.left), self.low + share * (self.high - self.low)
             px, py = self.place(x, y)
-            marks.append(_text(px, _HEIGHT - _BOTTOM + 16, f"{x:.3g}", "middle"))
+            marks.append(_text(px, bottom + 16, f"{x:.3g}", "middle"))
             marks.append(_text(_LEFT - 6, py + 4, f"{y:.3g}", "end"))
         middle = _TOP + self.height / 2
-        marks.append(_text(_LEFT + self.width / 2, _HEIGHT - 8, across, "middle"))
+        marks.append(_text(_LEFT + self.width / 2, bottom + 36, across, "middle"))
         marks.append(f'<g transform="rotate(-90 14 {middle})">{_text(14, middle, up, "middle")}</g>')
         return "".join(marks)
 

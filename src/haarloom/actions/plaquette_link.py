@@ -41,6 +41,9 @@ class PlaquetteLink(Link):
     """
 
     creased: ClassVar[bool] = False
+    accuracy: ClassVar[str] = (
+        "Integrals over the torus of eigenphases; the error is measured by refining the grid."
+    )
     letter: ClassVar[str] = "k"
 
     def coefficient(self, irrep: Irrep) -> Expr:

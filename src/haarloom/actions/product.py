@@ -64,6 +64,16 @@ class SiteProduct(TorusSite):
         return all(site.finite for site in self.sites)
 
     @property
+    def bounds_proven(self) -> bool:  # type: ignore[override]
+        """True if the bounds of every factor are."""
+        return all(site.bounds_proven for site in self.sites)
+
+    @property
+    def accuracy(self) -> str:  # type: ignore[override]
+        """That of each factor."""
+        return " ".join(dict.fromkeys(site.accuracy for site in self.sites))
+
+    @property
     def factors(self) -> tuple[Factor, ...] | None:
         """Factors over the eigenvalues of P, if every site weight has them."""
         parts = [getattr(site, "factors", None) for site in self.sites]

@@ -62,6 +62,11 @@ class HaarPower(TorusSite):
         """True for small whole powers and N ≤ 5."""
         return bool(self.power.is_Integer and self.power <= _HIGHEST_EXACT and self.group.n <= _EXACT_UP_TO)
 
+    @property
+    def bounds_proven(self) -> bool:  # type: ignore[override]
+        """True where the class function is exact."""
+        return self.finite
+
     def class_function(self) -> ClassFunction:
         """H^p exactly, if finite."""
         return _reduced_measure(self.group) ** int(self.power) if self.finite else super().class_function()

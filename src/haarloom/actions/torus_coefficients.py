@@ -98,8 +98,10 @@ class SampledFunction:
         return total
 
     def _size(self, points: int) -> float:
-        """(∫dP |f|²)^½, which bounds ∫ χ_c* f and its rounding (Cauchy and Schwarz, ∫|χ_c|² = 1)."""
-        return float(np.sqrt(np.abs(self._kept(points)) ** 2 @ alcove_grid(self.group, points)[1]))
+        """(∫dP |f|²)^½: rounding in ∫ χ_c* f stays below ε times this (Cauchy and Schwarz, ∫|χ_c|² = 1)."""
+        sizes = np.abs(self._kept(points))
+        largest = float(sizes.max()) or 1.0  # divided out, so that squares neither overflow nor vanish
+        return largest * float(np.sqrt((sizes / largest) ** 2 @ alcove_grid(self.group, points)[1]))
 
     def _kept(self, points: int) -> NDArray[Any]:
         if points not in self._values:

@@ -39,14 +39,20 @@ def _picture(n: int, function: Any, name: str) -> str:
         curves = [values.real] if np.isrealobj(values) else [values.real, values.imag]
         names = [] if len(curves) == 1 else [f"Re {name}", f"Im {name}"]
         return line_picture(theta, curves, "θ [rad]", name, names)
-    reach = 2 * np.pi / np.sqrt(1.5)
+    reach = 2 * np.pi * np.sqrt(2 / 3) * 1.12
     axis = np.linspace(-reach, reach, _SIDE)
     x, y = np.meshgrid(axis, axis)
     angles = np.stack([y / np.sqrt(6) + x / np.sqrt(2), y / np.sqrt(6) - x / np.sqrt(2)], axis=-1)
     values = function(angles).real
-    return heat_picture(
-        values, (-reach, reach, -reach, reach), "(θ₁ − θ₂)/√2", f"(θ₁ + θ₂ − 2θ₃)/√6, opacity: |Re {name}|"
-    )
+    box = (-reach, reach, -reach, reach)
+    return heat_picture(values, box, "(θ₁ − θ₂)/√2", f"(θ₁ + θ₂ − 2θ₃)/√6, strength: Re {name}", _alcove())
+
+
+def _alcove() -> list[tuple[float, float, str]]:
+    """The triangle θ₁ ≥ θ₂ ≥ θ₃ ≥ θ₁ − 2π, each conjugacy class once; its corners are the centre."""
+    turn = 2 * np.pi / 3
+    corners = [((0.0, 0.0, 0.0), "1"), ((turn, turn, -2 * turn), "ω"), ((2 * turn, -turn, -turn), "ω²")]
+    return [((a - b) / np.sqrt(2), (a + b - 2 * c) / np.sqrt(6), name) for (a, b, c), name in corners]
 
 
 def _line(n: int) -> tuple[NDArray[np.float64], NDArray[np.float64]]:

@@ -48,6 +48,10 @@ class TorusSite(Site):
     """
 
     finite: ClassVar[bool] = False
+    bounds_proven: ClassVar[bool] = False
+    accuracy: ClassVar[str] = (
+        "Transform on the torus of eigenphases; its error is measured by refining the grid."
+    )
     letter: ClassVar[str] = "w"
 
     def density_at(self, angles: NDArray[Any], values: Values) -> NDArray[Any]:

@@ -145,6 +145,10 @@ class Wilson(Link):
 
     kind: ClassVar[str] = "Wilson"
     FIELDS: ClassVar[tuple[Field, ...]] = (_BETA, PLAQUETTES)
+    accuracy: ClassVar[str] = (
+        "Exact Bessel determinants: floats with a proven error, any number of digits on request."
+    )
+    bounds_proven: ClassVar[bool] = True
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """Exact k_r, a power of a `WilsonCoefficient` (for SU(2), of a quotient of Bessel functions)."""

@@ -166,6 +166,11 @@ class WrittenSite(TorusSite):
         """True if the expression is a polynomial in characters."""
         return self.expression.finite is not None
 
+    @property
+    def bounds_proven(self) -> bool:  # type: ignore[override]
+        """True for a finite combination of characters."""
+        return self.finite
+
     def class_function(self) -> ClassFunction:
         """The exact class function, if finite."""
         return self.expression.finite or super().class_function()

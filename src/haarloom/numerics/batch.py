@@ -19,7 +19,7 @@ from haarloom.numerics.labels import conjugation
 from haarloom.numerics.link_numbers import link_coefficients_at
 from haarloom.numerics.ordering import spectral_order
 from haarloom.numerics.site_components import outward_reach, site_components
-from haarloom.numerics.truncation import EPS, input_errors, phase_of
+from haarloom.numerics.truncation import EPS, character_errors, input_errors, phase_of
 
 if TYPE_CHECKING:
     from haarloom.ring.model import RingModel
@@ -129,7 +129,7 @@ def truncate_batch(model: RingModel, cutoff: int, values: Mapping[str, NDArray[A
     matrix = np.broadcast_to(dressed[:, :size], (points, size, size))
     norm = _flat(model.site.norm_bound(values))
     noise = 8 * EPS * np.linalg.norm(matrix, axis=(1, 2)) + input_errors(
-        components.support, weight_errors, norm, root, k_errors
+        character_errors(components.support, weight_errors), norm, root, k_errors
     )
     tail = 0.0 if model.site.finite else _flat(model.site.tail_bound(outer - cutoff, values))
     far = _flat(model.link.largest_outside(outer, values))

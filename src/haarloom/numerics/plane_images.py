@@ -21,7 +21,7 @@ from haarloom.numerics.labels import conjugation
 from haarloom.numerics.link_numbers import link_coefficients_at
 from haarloom.numerics.plane import Plane
 from haarloom.numerics.site_components import SiteComponents, outward_reach, site_components
-from haarloom.numerics.truncation import EPS, input_errors, phase_of
+from haarloom.numerics.truncation import EPS, character_errors, input_errors, phase_of
 
 __all__ = ["PlanePart", "plane_parts"]
 
@@ -192,7 +192,10 @@ class _Table:
         norm, outside, edge = self.norm[None, :], self.outside[some, None], self.edge[some, None]
         root = self.root[some, None]
         noise = 16 * EPS * norm * root.max(axis=2) ** 2 + input_errors(
-            self.components.support, self.site_errors[None], norm, root, self.k_errors[some, None]
+            character_errors(self.components.support, self.site_errors[None]),
+            norm,
+            root,
+            self.k_errors[some, None],
         )
         flat = (norm * outside, 0 * norm * outside, norm * edge * np.sqrt(outside), noise)
         return Margins(*(array.reshape(-1) for array in flat))

@@ -7,6 +7,7 @@ import time
 import warnings
 from concurrent.futures import BrokenExecutor, Executor, Future, ProcessPoolExecutor, as_completed
 from dataclasses import dataclass, field
+from itertools import islice
 from math import ceil
 from multiprocessing import get_context
 from pathlib import Path
@@ -33,8 +34,17 @@ POOL_SECONDS = 3.0
 SAVE_SECONDS = 5.0
 """Shortest time between two writes of the result file."""
 
-FIRST_ROWS = 32
-"""Rows solved in this process, to measure what a row costs."""
+FIRST_POINTS = 8
+"""Points of the first chunk, solved in this process to measure what a point costs."""
+
+SLOW_POINT = 0.02
+"""Seconds for a point from which rows are no longer solved together."""
+
+LEAST_ROWS = 64
+"""Rows of a chunk where whole rows are solved together: fewer would waste the nodes of the warm starts."""
+
+WAVE = 8
+"""Chunks handed out at once for each core; their cost sets the size of the next ones."""
 
 BREAKDOWNS = 3
 """Broken worker pools in a row, without a chunk between, after which this process does the work."""
@@ -132,11 +142,13 @@ def _table(
 
 @dataclass(eq=False)
 class _Run:
-    """The one mutable thing of a scan: the table that fills up, and when it was last saved."""
+    """The one mutable thing of a scan: the table that fills up, the size of chunks, and the last save."""
 
     grid: ScanGrid
     table: xarray.Dataset
     file: Path | None
+    rows: int = 1
+    columns: int = FIRST_POINTS
     saved: float = field(default_factory=time.monotonic)
     bar: Any = None
 
@@ -166,54 +178,78 @@ class _Run:
         if time.monotonic() - self.saved > SAVE_SECONDS:
             self.save()
 
-    def missing(self, rows: int) -> list[Chunk]:
-        return list(self.grid.chunks(rows, self.table["done"].values == 1))
+    def missing(self) -> list[Chunk]:
+        """Chunks of the present size that are not done, as many as are handed out at once."""
+        done = self.table["done"].values == 1
+        return list(islice(self.grid.chunks(self.rows, self.columns, done), WAVE * _workers()))
+
+    @property
+    def left(self) -> int:
+        """Points that are not done."""
+        return int((self.table["done"].values == 0).sum())
 
     def work(self, executor: Executor | None) -> None:
-        rows, seconds = self._measured()
-        chunks = self.missing(rows)
-        if not chunks:
-            return
+        seconds = self._measured()
         if executor is not None:
-            self._through(executor, chunks)
-        elif (os.cpu_count() or 1) > 1 and len(chunks) > 1 and seconds > POOL_SECONDS:
-            self._through_own_pool(rows)
+            self._through(executor)
+        elif _workers() > 1 and seconds > POOL_SECONDS:
+            self._through_own_pool()
         else:
-            self._here(chunks)
+            self._here()
 
-    def _measured(self) -> tuple[int, float]:
-        """Rows for a chunk, and seconds of work left, from the time that a first small chunk takes."""
-        first = self.missing(FIRST_ROWS)
+    def _measured(self) -> float:
+        """Estimated seconds of work left, from a first small chunk; it sets the size of the others."""
+        first = self.missing()
         if not first:
-            return FIRST_ROWS, 0.0
-        start = time.perf_counter()
-        self.keep(solve_chunk(self.grid, first[0]))
-        each = (time.perf_counter() - start) / (first[0].stop - first[0].start)
-        left = int((self.table["done"].values == 0).sum())
+            return 0.0
+        result = solve_chunk(self.grid, first[0])
+        self.keep(result)
+        each = result.seconds / first[0].points
         columns = self.grid.shape[self.grid.plane[1]]
-        return max(FIRST_ROWS, ceil(CHUNK_SECONDS / each)), each * left / columns
+        if each > SLOW_POINT:
+            self.rows, self.columns = 1, max(1, min(columns, ceil(CHUNK_SECONDS / each)))
+            return each * self.left
+        # whole rows are solved together, at a fifth of the price or less
+        self.rows = max(LEAST_ROWS, ceil(5 * CHUNK_SECONDS / (each * columns)))
+        self.columns = columns
+        return each * self.left / 5
 
-    def _here(self, chunks: list[Chunk]) -> None:
-        for chunk in chunks:
-            self.keep(solve_chunk(self.grid, chunk))
+    def _resized(self, seconds: list[float]) -> None:
+        """Make the next chunks smaller where the last ones took long, larger where they were short."""
+        typical = sorted(seconds)[len(seconds) // 2]
+        columns = self.grid.shape[self.grid.plane[1]]
+        if typical > 2 * CHUNK_SECONDS and self.rows > 1:
+            self.rows = max(1, self.rows // 2)
+        elif typical > 2 * CHUNK_SECONDS:
+            self.columns = max(1, self.columns // 2)
+        elif typical < CHUNK_SECONDS / 4 and self.columns < columns:
+            self.columns = min(columns, 2 * self.columns)
+        elif typical < CHUNK_SECONDS / 4:
+            self.rows *= 2
 
-    def _through_own_pool(self, rows: int) -> None:
+    def _here(self) -> None:
+        while chunks := self.missing():
+            result = solve_chunk(self.grid, chunks[0])
+            self.keep(result)
+            self._resized([result.seconds])
+
+    def _through_own_pool(self) -> None:
         """Worker processes of our own: one that dies is replaced, and its chunk done again."""
         breakdowns = 0
-        while chunks := self.missing(rows):
+        while self.left:
             if breakdowns == BREAKDOWNS:
-                return self._here(chunks)
-            before = len(chunks)
+                return self._here()
+            before = self.left
             with ProcessPoolExecutor(mp_context=get_context("spawn")) as pool:
                 try:
-                    self._collect(pool, chunks)
+                    self._collect(pool)
                 except BrokenExecutor:
-                    breakdowns = breakdowns + 1 if len(self.missing(rows)) == before else 0
+                    breakdowns = breakdowns + 1 if self.left == before else 0
         return None
 
-    def _through(self, executor: Executor, chunks: list[Chunk]) -> None:
+    def _through(self, executor: Executor) -> None:
         try:
-            self._collect(executor, chunks)
+            self._collect(executor)
         except HaarloomError:
             raise
         except Exception as problem:
@@ -228,18 +264,27 @@ class _Run:
             failure.partial = self.table
             raise failure from problem
 
-    def _collect(self, executor: Executor, chunks: list[Chunk]) -> None:
-        waiting: list[Future[Any]] = []
-        broken: BaseException | None = None
-        try:
-            waiting += [executor.submit(solve_chunk, self.grid, chunk) for chunk in chunks]
-            for future in as_completed(waiting):
-                problem = future.exception()
-                if problem is None:
-                    self.keep(future.result())
-                broken = broken or problem
-        finally:
-            for future in waiting:
-                future.cancel()
-        if broken is not None:
-            raise broken
+    def _collect(self, executor: Executor) -> None:
+        """Hand out chunks, a wave at a time, and keep what comes back."""
+        while chunks := self.missing():
+            waiting: list[Future[Any]] = []
+            seconds: list[float] = []
+            broken: BaseException | None = None
+            try:
+                waiting += [executor.submit(solve_chunk, self.grid, chunk) for chunk in chunks]
+                for future in as_completed(waiting):
+                    problem = future.exception()
+                    if problem is None:
+                        self.keep(future.result())
+                        seconds.append(future.result().seconds)
+                    broken = broken or problem
+            finally:
+                for future in waiting:
+                    future.cancel()
+            if broken is not None:
+                raise broken
+            self._resized(seconds)
+
+
+def _workers() -> int:
+    return os.cpu_count() or 1

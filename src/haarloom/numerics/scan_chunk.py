@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import time
 from dataclasses import dataclass, replace
 from typing import Any
 
@@ -36,6 +37,8 @@ class ChunkResult:
         λ_0 and K, shape (R, C).
     note
         Why some points have no result; empty where all have.
+    seconds
+        How long it took.
     """
 
     chunk: Chunk
@@ -45,11 +48,18 @@ class ChunkResult:
     ground: NDArray[np.complex128]
     cutoff: NDArray[np.int32]
     note: str = ""
+    seconds: float = 0.0
 
 
 @single_threaded
 def solve_chunk(grid: ScanGrid, chunk: Chunk) -> ChunkResult:
     """Masses at all points of a chunk; points whose bound does not close come back without numbers."""
+    start = time.perf_counter()
+    result = _solved(grid, chunk)
+    return replace(result, seconds=time.perf_counter() - start)
+
+
+def _solved(grid: ScanGrid, chunk: Chunk) -> ChunkResult:
     plane = _plane(grid, chunk)
     if not grid.model.link.diagonal:
         return _one_by_one(grid, chunk, plane)
@@ -82,9 +92,10 @@ def _plane(grid: ScanGrid, chunk: Chunk) -> Plane:
         row = "" if complex_row else name
         fixed = fixed if complex_row else {key: value for key, value in fixed.items() if key != row}
     else:
-        row, first = grid.names[rows], grid.axes[rows][chunk.start : chunk.stop]
+        row, first = grid.names[rows], grid.axes[rows][slice(*chunk.rows)]
     names = (row, grid.names[columns])
-    return Plane(grid.model, 0, names, (first, grid.axes[columns]), fixed, grid.levels, grid.tolerance)
+    axes = (first, grid.axes[columns][slice(*chunk.columns)])
+    return Plane(grid.model, 0, names, axes, fixed, grid.levels, grid.tolerance)
 
 
 def _cutoff(plane: Plane) -> int:

@@ -66,32 +66,41 @@ class ScanGrid:
         others = [axis for axis in range(len(lengths)) if axis != columns]
         return (max(others, key=lambda axis: lengths[axis]) if others else None), columns
 
-    def chunks(self, rows_each: int, skip: NDArray[np.bool_]) -> Iterator[Chunk]:
-        """All chunks of at most so many rows that hold a point outside ``skip``."""
+    def chunks(self, rows_each: int, columns_each: int, skip: NDArray[np.bool_]) -> Iterator[Chunk]:
+        """All chunks of at most so many rows and columns that hold a point outside ``skip``."""
         rows, columns = self.plane
         outer = [range(size) for axis, size in enumerate(self.shape) if axis not in (rows, columns)]
         length = 1 if rows is None else self.shape[rows]
         for place in product(*outer):
-            for start in range(0, length, rows_each):
-                chunk = Chunk(tuple(place), start, min(start + rows_each, length))
+            for row, column in product(
+                range(0, length, rows_each), range(0, self.shape[columns], columns_each)
+            ):
+                rows_range = (row, min(row + rows_each, length))
+                columns_range = (column, min(column + columns_each, self.shape[columns]))
+                chunk = Chunk(tuple(place), rows_range, columns_range)
                 if not skip[chunk.index(self)].all():
                     yield chunk
 
 
 @dataclass(frozen=True)
 class Chunk:
-    """Rows ``start`` to ``stop`` of one plane, at given places on the other axes."""
+    """Part of one plane, at given places on the other axes; ``rows`` and ``columns`` are (start, stop)."""
 
     place: tuple[int, ...]
-    start: int
-    stop: int
+    rows: tuple[int, int]
+    columns: tuple[int, int]
+
+    @property
+    def points(self) -> int:
+        """Number of points."""
+        return (self.rows[1] - self.rows[0]) * (self.columns[1] - self.columns[0])
 
     def index(self, grid: ScanGrid) -> tuple[int | slice, ...]:
         """Where the chunk sits in an array of the grid's shape."""
         rows, columns = grid.plane
         rest = iter(self.place)
         return tuple(
-            slice(self.start, self.stop) if axis == rows else slice(None) if axis == columns else next(rest)
+            slice(*self.rows) if axis == rows else slice(*self.columns) if axis == columns else next(rest)
             for axis in range(len(grid.axes))
         )
 

@@ -141,6 +141,7 @@ def spectrum(model: RingModel, levels: int = 6, cutoff: int | None = None, **val
     numbers = plain_numbers(checked_values(model, values))
     count = checked_levels(levels)
     if cutoff is None:
+        check_memory(count * count, f"the vectors of {count:,} levels")
         truncation, system, errors = automatic_truncation(model, count, numbers, TOLERANCE)
     else:
         truncation = truncate(model, _checked_size(model, count, cutoff), numbers)
@@ -199,6 +200,12 @@ def _status(truncation: Truncation, errors: NDArray[np.float64], chosen: bool) -
         )
     if not np.isfinite(errors).all():
         level = int(np.argmin(np.isfinite(errors)))
+        if chosen:
+            return (
+                f"{premise} With {size} truncation is negligible, but from level {level} on rounding and the "
+                f"stated errors of k_r and w_c, up to {truncation.noise:.1e} in norm, leave the levels open: "
+                "ask for fewer levels, or use certify(...)."
+            )
         return (
             f"{premise} With {size} the bound does not close from level {level} on: what is cut off may have "
             f"norm up to {truncation.outer_norm:.1e}. These are eigenvalues of the truncated T only; "

@@ -12,7 +12,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cached_property, lru_cache
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -31,10 +31,13 @@ if TYPE_CHECKING:
     from haarloom.algebra.irrep import Irrep
     from haarloom.ring.model import RingModel
 
-__all__ = ["EPS", "Truncation", "input_errors", "phase_of", "site_numbers", "truncate"]
+__all__ = ["EPS", "Truncation", "character_errors", "input_errors", "phase_of", "site_numbers", "truncate"]
 
 TRANSFORM_COST = 8.0
 """Elements of a sparse matrix that cost as much as one grid point and one level of a transform (measured)."""
+
+TRANSFORM_ROUNDING = 32 * EPS
+"""‖δW‖/‖W‖ when W is applied by transforms: rounding, and characters that wrap around the grid."""
 
 LAPACK_SCALE = 1000
 """Largest basis whose rounding is measured by the Frobenius norm, as LAPACK's error bounds are."""
@@ -231,6 +234,10 @@ def truncate(model: RingModel, cutoff: int, values: Mapping[str, Any]) -> Trunca
             )
     root = np.sqrt(np.abs(k))
     norm = float(np.max(site.norm_bound(values)))
+    action = _site_action(site, values, cutoff, outer, weights)
+    # transforms start from the closed form of W: no coefficient enters, only rounding
+    by_fusion = isinstance(action, FusionAction)
+    site_error = character_errors(support, weight_errors) if by_fusion else TRANSFORM_ROUNDING * norm
     return Truncation(
         rank=rank,
         cutoff=cutoff,
@@ -238,34 +245,42 @@ def truncate(model: RingModel, cutoff: int, values: Mapping[str, Any]) -> Trunca
         outer=outer,
         root=root,
         phase=phase_of(k),
-        action=_site_action(site, values, cutoff, outer, weights),
+        action=action,
         site=(support, weights, weight_errors),
         norm=norm,
         outside=float(np.max(link.largest_outside(cutoff, values))),
         tail=0.0 if site.finite else float(np.max(site.tail_bound(outer - cutoff, values))),
         outside_far=float(np.max(link.largest_outside(outer, values))),
-        input_error=float(input_errors(support, weight_errors, norm, root, k_errors)),
+        input_error=float(input_errors(site_error, norm, root, k_errors)),
     )
 
 
-def input_errors(
-    support: tuple[Irrep, ...],
-    weight_errors: NDArray[np.float64],
-    norm: Any,
-    root: NDArray[np.float64],
-    k_errors: NDArray[np.float64],
-) -> Any:
-    """Bound of ‖δ(S W S)‖ ≤ ‖S‖² Σ |δw_c| d_c + 2 ‖δS‖ ‖W‖ ‖S‖, with δS = δk/(2S); last axes irreps."""
-    dimensions = np.array([irrep.dimension for irrep in support], dtype=float)
+def input_errors(site_error: Any, norm: Any, root: NDArray[np.float64], k_errors: NDArray[np.float64]) -> Any:
+    """Bound of ‖δ(S W S)‖ ≤ ‖S‖² ‖δW‖ + 2 ‖δS‖ ‖W‖ ‖S‖, with δS = δk/(2S); last axis of S the irreps."""
     shift = np.divide(k_errors, root, out=np.sqrt(k_errors), where=root > 0).max(axis=-1)
     largest = root.max(axis=-1)
-    return largest**2 * (weight_errors @ dimensions) + shift * norm * largest
+    return largest**2 * site_error + shift * norm * largest
+
+
+def character_errors(support: tuple[Irrep, ...], errors: NDArray[np.float64]) -> Any:
+    """‖δW‖ ≤ Σ_c |δw_c| d_c from the errors of the coefficients, last axis the irreps."""
+    return errors @ np.array([irrep.dimension for irrep in support], dtype=float)
 
 
 def site_numbers(
     site: SiteWeight, values: Mapping[str, Any]
 ) -> tuple[tuple[Irrep, ...], NDArray[Any], NDArray[np.float64]]:
-    """All w_c of a finite W; of an infinite one those that are not negligible."""
+    """All w_c of a finite W; of an infinite one those that are not negligible. Kept for other cutoffs."""
+    own = {symbol.name for symbol in site.parameters}
+    point = tuple(sorted((name, np.asarray(value).item()) for name, value in values.items() if name in own))
+    return _site_numbers(site, point)
+
+
+@lru_cache(maxsize=32)
+def _site_numbers(
+    site: SiteWeight, point: tuple[tuple[str, complex], ...]
+) -> tuple[tuple[Irrep, ...], NDArray[Any], NDArray[np.float64]]:
+    values = dict(point)
     support = site.support() if site.finite else site.group.irreps(negligible_beyond(site, values, EPS))
     weights, errors = site.coefficients_at(support, values)
     return tuple(support), np.asarray(weights).reshape(-1), np.asarray(errors, dtype=float).reshape(-1)

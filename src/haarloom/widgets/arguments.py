@@ -44,7 +44,7 @@ def checked_model(model: Any) -> RingModel:
     if not isinstance(model, RingModel):
         raise ParameterError(
             f"model = {model!r} is no ring model: give RingModel(link, site), "
-            "for instance hl.RingModel(hl.heat_kernel(G, \"t\"), hl.static_fermions(G, \"z\"))."
+            'for instance hl.RingModel(hl.heat_kernel(G, "t"), hl.static_fermions(G, "z")).'
         )
     return model
 
@@ -93,8 +93,8 @@ def checked_element(model: RingModel, cutoff: int, element: Any) -> tuple[str, s
     for irrep in (row, column):
         if sum(irrep.labels) > cutoff:
             raise ParameterError(
-                f"element = {element!r}: irrep {irrep.name} with labels {irrep.labels} lies outside the basis "
-                f"Σ a_i ≤ {cutoff}: take cutoff ≥ {sum(irrep.labels)}."
+                f"element = {element!r}: irrep {irrep.name} with labels {irrep.labels} lies outside "
+                f"the basis Σ a_i ≤ {cutoff}: take cutoff ≥ {sum(irrep.labels)}."
             )
     return (row.name, column.name)
 
@@ -139,5 +139,5 @@ def checked_mapping(name: str, given: Any) -> Mapping[str, Any]:
     if given is None:
         return {}
     if not isinstance(given, Mapping):
-        raise ParameterError(f"{name} = {given!r} is no table: give a dictionary such as {{\"z\": 0.3}}.")
+        raise ParameterError(f'{name} = {given!r} is no table: give a dictionary such as {{"z": 0.3}}.')
     return given

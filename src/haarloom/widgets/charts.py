@@ -33,13 +33,15 @@ class Ruler:
             **placement,
         )
 
-    def span(self, low: float, high: float) -> None:
-        """Show the range from low to high."""
+    def span(self, low: float, high: float, *, margin: float = 0.0) -> None:
+        """Show the range from low to high, with ticks inside it and a share of room beyond its ends."""
+        ticks = round_ticks(low, high, self._most)
+        low, high = low - margin * (high - low), high + margin * (high - low)
         if (self.scale.min, self.scale.max) == (low, high):
             return
         with self.scale.hold_sync():
             self.scale.min, self.scale.max = low, high
-        self.axis.tick_values = round_ticks(low, high, self._most)
+        self.axis.tick_values = ticks
 
 
 def figure(

@@ -50,7 +50,7 @@ def step_html(step: Step, outcome: ReplayedStep | None) -> str:
     lines = "".join(
         f'<div class="hl-statement">$\\displaystyle {escape(line)}$</div>' for line in step.latex()
     )
-    return f'<li><div class="hl-step-title"><b>{escape(step.title)}</b>{mark_html(outcome)}</div>{lines}</li>'
+    return f'<li><div class="hl-step-title"><b>{escape(step.title)}</b> {mark_html(outcome)}</div>{lines}</li>'
 
 
 def mark_html(outcome: ReplayedStep | None) -> str:
@@ -65,4 +65,4 @@ def mark_html(outcome: ReplayedStep | None) -> str:
 
 
 def _mark(state: str, sign: str, words: str) -> str:
-    return f'<span class="hl-verified hl-{state}"><b class="hl-mark">{sign}</b>{escape(words)}</span>'
+    return f'<span class="hl-verified hl-{state}"><b class="hl-mark">{sign}</b> {escape(words)}</span>'

@@ -35,6 +35,7 @@ if TYPE_CHECKING:
 
 __all__ = ["ElementPane"]
 
+
 class ElementPane(Pane):
     """The transfer matrix T_rs as a grid of r against s; choosing an element opens its derivation.
 
@@ -192,7 +193,7 @@ class ElementPane(Pane):
         if not self.derivation:
             return ""
         heading = f"<p>$\\displaystyle {escape(_element_latex(self.derivation))}$</p>"
-        return heading + derivation_html(self.derivation, self.verification)
+        return self._grid.still() + heading + derivation_html(self.derivation, self.verification)
 
 
 def _element_latex(derivation: Derivation) -> str:

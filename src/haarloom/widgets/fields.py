@@ -28,7 +28,9 @@ class FaultLine(ipywidgets.HTML):
         self.observe(self._show, "message")
 
     def _show(self, _: Any) -> None:
-        self.value = f'<div class="hl-fault-line" role="alert">{escape(self.message)}</div>'
+        words, _, quoted = self.message.partition("\n")
+        excerpt = f"<pre>{escape(quoted)}</pre>" if quoted else ""
+        self.value = f'<div class="hl-fault-line" role="alert">{escape(words)}{excerpt}</div>'
         self.layout.display = None if self.message else "none"
 
 

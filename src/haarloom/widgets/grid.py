@@ -10,6 +10,7 @@ import numpy as np
 import traitlets
 
 from haarloom.widgets.head import FRONT
+from haarloom.widgets.stills import grid_svg
 
 if TYPE_CHECKING:
     from haarloom.algebra.irrep import Irrep
@@ -58,6 +59,16 @@ class MatrixGrid(anywidget.AnyWidget):
         with self.hold_sync():
             self.re = np.ascontiguousarray(np.real(matrix), dtype=np.float64).tobytes()
             self.im = imaginary.astype(np.float64).tobytes() if np.any(imaginary) else b""
+
+    def still(self) -> str:
+        """The grid as a static picture."""
+        size = len(self.rows)
+        pattern = np.frombuffer(self.pattern, dtype=np.uint8).reshape(size, size)
+        parts = [np.frombuffer(part) for part in (self.re, self.im) if part]
+        magnitudes = np.hypot.reduce(parts).reshape(size, size) if parts else pattern.astype(float)
+        nality = np.array([row["nality"] for row in self.rows])
+        steps = (nality[:, None] - nality[None, :]) % self.order
+        return grid_svg([row["name"] for row in self.rows], steps, pattern, magnitudes, self.order)
 
 
 def _row(irrep: Irrep) -> dict[str, Any]:

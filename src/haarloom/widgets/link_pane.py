@@ -7,6 +7,7 @@ from html import escape
 from typing import TYPE_CHECKING, Any
 
 import ipywidgets
+import numpy as np
 import sympy
 import traitlets
 
@@ -18,6 +19,7 @@ from haarloom.widgets.names import short_error
 from haarloom.widgets.pane import Pane
 from haarloom.widgets.parameters import checked_start, ranges_of
 from haarloom.widgets.sliders import ValueSliders
+from haarloom.widgets.stills import bars_svg
 from haarloom.widgets.weight_form import WeightForm
 
 if TYPE_CHECKING:
@@ -133,7 +135,11 @@ class LinkPane(Pane):
         return "\n".join(lines)
 
     def _facts_html(self) -> str:
-        return f"<p>$\\displaystyle {escape(self.weight.latex())}$</p>{self._listed.value}"
+        picture = ""
+        if self.coefficients is not None:
+            names, shades = zip(*((irrep.name, irrep.nality) for irrep in self.irreps), strict=True)
+            picture = bars_svg(names, np.real(self.coefficients), shades, "kᵣ")
+        return f"<p>$\\displaystyle {escape(self.weight.latex())}$</p>{picture}{self._listed.value}"
 
 
 def _table_html(weight: LinkWeight, irreps: tuple[Irrep, ...], values: Mapping[str, float]) -> str:

@@ -35,7 +35,8 @@ class _Panel:
         # a vanishing eigenvalue has an infinite mass: the line stops there
         levels = np.where(np.isfinite(levels), levels, np.nan)
         low, high = padded(*_ends(levels))
-        self.across.span(float(grid[0]), float(grid[-1]))
+        # the end caps of the axis would run through the first and the last tick label
+        self.across.span(float(grid[0]), float(grid[-1]), margin=0.03)
         self.up.span(low, high)
         with self.levels.hold_sync():
             self.levels.x, self.levels.y = grid, levels

@@ -105,7 +105,8 @@ class Pane(ipywidgets.VBox):
         try:
             yield
         except HaarloomError as problem:
-            self.fault = f"{problem} What is shown is the last good result."
+            words, line, quoted = str(problem).partition("\n")
+            self.fault = f"{words} What is shown is the last good result.{line}{quoted}"
         else:
             self.fault = ""
 

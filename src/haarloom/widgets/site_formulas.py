@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from html import escape
 from typing import TYPE_CHECKING
 
@@ -12,11 +12,15 @@ from haarloom.widgets.names import short_error
 
 if TYPE_CHECKING:
     from haarloom.actions.protocols import SiteWeight
+    from haarloom.algebra.irrep import Irrep
 
 __all__ = ["characters_html", "loops_html"]
 
 MOST_TERMS = 12
 """Terms written out: more than that nobody reads, and the typesetting gets slow."""
+
+MOST_WRITTEN = 100
+"""Characters in all up to which coefficients are exact: those of larger sums are polynomials of pages."""
 
 LONGEST = 1500
 """Characters of LaTeX up to which a polynomial in loops is shown."""
@@ -27,7 +31,12 @@ SHOWN_CUTOFF = {2: 5, 3: 2}
 
 def characters_html(site: SiteWeight, values: Mapping[str, float]) -> str:
     """W in characters: exact where it is a finite sum, else its first coefficients as numbers."""
-    return _exact_sum(site) if site.finite else _leading_numbers(site, values)
+    if not site.finite:
+        return _leading_numbers(site, values, "without end")
+    support = site.support()
+    if len(support) > MOST_WRITTEN:
+        return _leading_numbers(site, values, f"{len(support):,} characters")
+    return _exact_sum(support, site)
 
 
 def loops_html(site: SiteWeight) -> str:
@@ -38,14 +47,14 @@ def loops_html(site: SiteWeight) -> str:
     return f"<div>$W = {escape(text)}$</div>" if len(text) <= LONGEST else ""
 
 
-def _exact_sum(site: SiteWeight) -> str:
-    support = site.support()
+def _exact_sum(support: Sequence[Irrep], site: SiteWeight) -> str:
     terms = [
-        _term(site.coefficient(c), "" if c.dimension == 1 else rf"\chi_{{{c.latex()}}}") for c in support
+        _term(site.coefficient(c), "" if c.dimension == 1 else rf"\chi_{{{c.latex()}}}")
+        for c in support[:MOST_TERMS]
     ]
-    shown = " + ".join(terms[:MOST_TERMS])
-    if len(terms) > MOST_TERMS:
-        shown += rf" + \cdots\;({len(terms) - MOST_TERMS}\text{{ more}})"
+    shown = " + ".join(terms)
+    if len(support) > MOST_TERMS:
+        shown += rf" + \cdots\;({len(support) - MOST_TERMS}\text{{ more}})"
     return f"<div>$W = {escape(shown)}$</div>"
 
 
@@ -58,7 +67,7 @@ def _term(coefficient: sympy.Expr, character: str) -> str:
     return rf"\left({text}\right){character}" if coefficient.is_Add else rf"{text}\,{character}"
 
 
-def _leading_numbers(site: SiteWeight, values: Mapping[str, float]) -> str:
+def _leading_numbers(site: SiteWeight, values: Mapping[str, float], extent: str) -> str:
     irreps = site.group.irreps(SHOWN_CUTOFF.get(site.group.n, 1))
     numbers, errors = site.coefficients_at(irreps, values)
     cells = "".join(
@@ -66,7 +75,7 @@ def _leading_numbers(site: SiteWeight, values: Mapping[str, float]) -> str:
         for irrep, number, error in zip(irreps, numbers, errors, strict=True)
     )
     head = "<tr><th>c</th><th>w<sub>c</sub></th><th>error ≤</th></tr>"
-    title = r"<div>$W = \sum_c w_c\,\chi_c$, without end; at the present values</div>"
+    title = rf"<div>$W = \sum_c w_c\,\chi_c$, {extent}; at the present values</div>"
     return f'{title}<table class="hl-table">{head}{cells}</table>'
 
 

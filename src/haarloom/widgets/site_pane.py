@@ -16,16 +16,20 @@ from haarloom.widgets.copy_code import call, opening_lines, values_text, weight_
 from haarloom.widgets.fields import LABEL, column, section
 from haarloom.widgets.pane import Pane
 from haarloom.widgets.parameters import checked_start, ranges_of
-from haarloom.widgets.site_formulas import characters_html, loops_html
+from haarloom.widgets.site_formulas import MOST_TERMS, characters_html, loops_html
 from haarloom.widgets.sliders import ValueSliders
 from haarloom.widgets.torus_picture import QUANTITIES, picture_for
 from haarloom.widgets.weight_form import WeightForm, default_weight, kinds_of
 
 if TYPE_CHECKING:
-    from haarloom.algebra.group import SU
     from haarloom.actions.protocols import SiteWeight
+    from haarloom.algebra.group import SU
 
 __all__ = ["SitePane"]
+
+
+NARROW = {"description_width": "34px"}
+"""Style of the menu that shares its line with a button."""
 
 
 class SitePane(Pane):
@@ -83,7 +87,7 @@ class SitePane(Pane):
         self.first_drawing()
 
     def _controls(self) -> ipywidgets.Widget:
-        self._new = ipywidgets.Dropdown(options=list(kinds_of("site")), description="add", style={"description_width": "34px"})
+        self._new = ipywidgets.Dropdown(options=list(kinds_of("site")), description="add", style=NARROW)
         add = ipywidgets.Button(description="Add factor", tooltip="Multiply W by a factor of the chosen kind")
         add.on_click(self._add)
         row = ipywidgets.VBox([self._new, add]).add_class("hl-add")
@@ -167,10 +171,12 @@ class SitePane(Pane):
         )
 
     def _facts_text(self) -> str:
-        return f"  W = {self.weight.class_function().in_characters()}" if self.weight.finite else ""
+        short = self.weight.finite and len(self.weight.support()) <= MOST_TERMS
+        return f"  W = {self.weight.class_function().in_characters()}" if short else ""
 
     def _facts_html(self) -> str:
-        return f"<p>{self._formula.value}</p>{self._sums.value}"
+        caption = f"<p>{escape(self.quantity)}. {escape(self._picture.caption)}</p>"
+        return f"<p>{self._formula.value}</p>{self._sums.value}{self._picture.still()}{caption}"
 
 
 def _product(forms: list[WeightForm]) -> SiteWeight:

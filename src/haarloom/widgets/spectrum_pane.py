@@ -29,6 +29,7 @@ from haarloom.widgets.pane import Pane
 from haarloom.widgets.parameters import checked_start, ranges_of
 from haarloom.widgets.plane_chart import PlaneChart
 from haarloom.widgets.sliders import ValueSliders
+from haarloom.widgets.stills import curves_svg
 
 if TYPE_CHECKING:
     from haarloom.numerics.spectrum import Spectrum
@@ -258,7 +259,20 @@ class SpectrumPane(Pane):
         return repr(self.spectrum) if self.spectrum else ""
 
     def _facts_html(self) -> str:
-        return spectrum_html(self.spectrum) if self.spectrum else ""
+        if not self.spectrum:
+            return ""
+        return self._still() + spectrum_html(self.spectrum)
+
+    def _still(self) -> str:
+        if self.branches is None:
+            return ""
+        grid, masses, name = self.branches.grid, self.branches.masses.T, self.branches.parameter
+        marks: dict[str, Any] = {"here": self.values.get(name), "shaded": self.stretches}
+        charts = (
+            curves_svg(grid, part, parameter_face(name), up, **marks)
+            for part, up in ((masses.real, "Re m [1/a]"), (masses.imag, "Im m [1/a]"))
+        )
+        return f"{''.join(charts)}<p>{self._note.value}</p>"
 
 
 def _preferred_scan(values: Mapping[str, float]) -> str:
@@ -313,6 +327,11 @@ def _scan_sentence(branches: MassBranches, stretches: Sequence[tuple[float, floa
     worst = f"errors along the scan ≤ {short_error(branches.error.max())}"
     if not np.isfinite(branches.error).all():
         worst = "on part of the scan the cutoff is too small for a bound on the error"
+    if (branches.verdicts == "complex").any():
+        return (
+            "T is complex along the scan, so that masses need not come in conjugate pairs: nothing is "
+            f"shaded; {worst}."
+        )
     if not stretches:
         return (
             f"At none of the {len(branches.grid)} points is the lowest mass one of a complex pair "

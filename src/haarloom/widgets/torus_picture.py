@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from base64 import b64encode
 from collections.abc import Callable, Mapping
 from typing import TYPE_CHECKING
 
@@ -12,6 +13,7 @@ import numpy as np
 from haarloom.widgets.charts import INK, Ruler, figure, padded, round_ticks
 from haarloom.widgets.dyes import CLOTH, DYES, RAMP
 from haarloom.widgets.raster import png, tinted
+from haarloom.widgets.stills import curves_svg
 
 if TYPE_CHECKING:
     from haarloom.actions.protocols import SiteWeight
@@ -78,6 +80,11 @@ class MapPicture:
             reach = float(np.abs(shown).max()) or 1.0
             self._paint(shown, RAMP, -reach, reach)
 
+    def still(self) -> str:
+        """The map as a static picture, without axes."""
+        data = b64encode(self._map.image.value).decode()
+        return f'<img alt="W on the torus of eigenphases" width="260" src="data:image/png;base64,{data}">'
+
     def _paint(self, shown: np.ndarray, colours: tuple[str, ...], low: float, high: float) -> None:
         with self._colours.hold_sync():
             self._colours.colors, self._colours.min, self._colours.max = list(colours), low, high
@@ -128,6 +135,10 @@ class LinePicture:
         self._up.axis.label = quantity
         self._up.span(*padded(min(0.0, float(shown.min())), max(0.0, float(shown.max()))))
         self._line.y = shown
+
+    def still(self) -> str:
+        """The line as a static picture."""
+        return curves_svg(self._theta, np.asarray(self._line.y)[None, :], "θ [rad]", self._up.axis.label)
 
 
 def picture_for(group: SU) -> MapPicture | LinePicture:
