@@ -18,7 +18,7 @@ from haarloom.actions.parameters import Values, evaluate
 from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
-from haarloom.exceptions import DocumentError
+from haarloom.exceptions import ClassFunctionError, DocumentError
 from haarloom.torus.angles import full_angles
 
 G = SU(3)
@@ -181,3 +181,19 @@ def test_site_weights_of_ones_own() -> None:
     alone, _ = LorentzSite(G, sympy.Symbol("b")).coefficients_at(G.irreps(2), {"b": 2.0})
     # the trivial coefficient of a product: Σ_c w_c w′_c̄
     assert w[0] == pytest.approx(1.5 * alone[0] + 0.5 * alone[4], abs=float(error[0]) + 1e-13)
+
+
+@dataclass(frozen=True)
+class LopsidedSite(TorusSite):
+    """Not a class function: it singles out the first eigenphase."""
+
+    group: SU
+    kind: ClassVar[str] = "lopsided"
+
+    def density_at(self, angles: Any, values: Values) -> Any:
+        return 2 + np.cos(np.asarray(angles)[..., 0])
+
+
+def test_a_density_that_is_no_class_function_is_refused() -> None:
+    with pytest.raises(ClassFunctionError, match=r"no class function: at eigenphases \("):
+        LopsidedSite(G).coefficients_at(G.irreps(1), {})

@@ -197,6 +197,33 @@ def test_code_is_shown_copied_and_follows_the_slider(notebook: Opener) -> None:
     expect(pane.locator("pre")).to_contain_text('"z": 0.51')
 
 
+def test_every_control_of_a_loom_has_a_name_and_a_ring(notebook: Opener) -> None:
+    book = notebook(MODEL + "\nloom = hl.Loom(model, values=values)\nloom")
+    book.run_all()
+    loom = book.output(0)
+    expect(loom.get_by_role("slider", name="z", exact=True)).to_have_count(3)
+    expect(loom.get_by_role("slider", name="t", exact=True)).to_have_count(3)
+    expect(loom.get_by_role("textbox", name="value of z")).to_have_count(3)
+    field(loom, "kind").first.select_option("Wilson")
+    expect(loom.get_by_role("slider", name="β", exact=True)).to_have_count(3)
+    loom.get_by_role("button", name="Copy Loom as Python").focus()
+    bare, inside = [], 0
+    while inside < 80:
+        book.page.keyboard.press("Tab")
+        kind, style, width, within = book.page.evaluate("""() => {
+            const node = document.activeElement, look = getComputedStyle(node);
+            return [node.tagName + '.' + node.className, look.outlineStyle,
+                    parseFloat(look.outlineWidth), Boolean(node.closest('.hl-pane'))];
+        }""")
+        if not within:
+            break
+        inside += 1
+        if style == "none" or width < 1:
+            bare.append(kind)
+    assert inside > 30
+    assert bare == []
+
+
 def test_dark_theme_darkens_every_part(notebook: Opener) -> None:
     book = notebook(MODEL + "\nloom = hl.Loom(model, values=values)\nloom")
     book.run_all()

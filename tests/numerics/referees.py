@@ -1,7 +1,8 @@
 """Referees of the numerics: transfer matrices put together by routes that share nothing with the package.
 
 Irreps are partitions, products with antisymmetric powers follow Pieri's rule (I. G. Macdonald, *Symmetric
-Functions and Hall Polynomials*, I.5), coefficients are mpmath numbers, eigenvalues mpmath's.
+Functions and Hall Polynomials*, I.5), coefficients are mpmath numbers, eigenvalues refined
+by inverse iteration in mpmath until their residual vanishes.
 """
 
 from __future__ import annotations
@@ -15,6 +16,7 @@ import numpy as np
 from mpmath import mp
 
 Labels = tuple[int, ...]
+Elements = dict[tuple[int, int], Any]
 
 
 def label_list(n: int, cutoff: int) -> list[Labels]:
@@ -87,43 +89,71 @@ def dimension(labels: Labels) -> int:
     return top // bottom
 
 
-def fermions(n: int, cutoff: int, z: Any, zbar: Any = 0, copies: int = 1) -> mpmath.matrix:
+def fermions(n: int, cutoff: int, z: Any, zbar: Any = 0, copies: int = 1) -> Elements:
     """⟨r|W|s⟩ of det(1 + zP)^n det(1 + z̄P†)^n: one factor after another on a wider basis, then cut."""
-    margin = copies * (2 if zbar else 1)
-    wide = label_list(n, cutoff + margin)
+    wide = label_list(n, cutoff + copies * (2 if zbar else 1))
     place = {labels: i for i, labels in enumerate(wide)}
-    up = [mp.zeros(len(wide)) for _ in range(n + 1)]
+    particle: Elements = {}
+    antiparticle: Elements = {}
     for column, labels in enumerate(wide):
         for boxes in range(n + 1):
             for target in vertical_strips(labels, boxes):
                 if target in place:
-                    up[boxes][place[target], column] += 1
-    particle, antiparticle = mp.zeros(len(wide)), mp.zeros(len(wide))
-    for boxes in range(n + 1):
-        particle += mp.mpmathify(z) ** boxes * up[boxes]
-        antiparticle += mp.mpmathify(zbar) ** boxes * up[boxes].T
-    site = mp.eye(len(wide))
+                    row = place[target]
+                    particle[row, column] = particle.get((row, column), 0) + mp.mpmathify(z) ** boxes
+                    antiparticle[column, row] = antiparticle.get((column, row), 0) + mp.mpmathify(zbar) ** boxes
+    site: Elements = {(i, i): mp.mpf(1) for i in range(len(wide))}
     for _ in range(copies):
-        site = particle * site
+        site = _product(particle, site)
         if zbar:
-            site = antiparticle * site
+            site = _product(antiparticle, site)
     size = len(label_list(n, cutoff))
-    return site[:size, :size]
+    return {(i, j): element for (i, j), element in site.items() if i < size and j < size}
 
 
-def transfer(link: Sequence[Any], site: mpmath.matrix) -> mpmath.matrix:
+def _product(one: Elements, other: Elements) -> Elements:
+    rows: dict[int, list[tuple[int, Any]]] = {}
+    for (i, j), element in other.items():
+        rows.setdefault(i, []).append((j, element))
+    found: Elements = {}
+    for (i, k), element in one.items():
+        for j, second in rows.get(k, ()):
+            found[i, j] = found.get((i, j), 0) + element * second
+    return found
+
+
+def transfer(link: Sequence[Any], site: Elements) -> mpmath.matrix:
     """K^{1/2} W K^{1/2} on the irreps that both hold."""
-    size = len(link)
     roots = [mp.sqrt(number) for number in link]
-    return mp.matrix(
-        [[roots[i] * site[i, j] * roots[j] for j in range(size)] for i in range(size)]
-    )
+    matrix = mp.zeros(len(link))
+    for (i, j), element in site.items():
+        matrix[i, j] = roots[i] * element * roots[j]
+    return matrix
 
 
 def levels(matrix: mpmath.matrix, count: int) -> list[mpmath.mpc]:
-    """Eigenvalues of largest modulus, by mpmath's QR."""
-    found, _ = mp.eig(matrix)
-    return sorted(map(mp.mpc, found), key=lambda value: (-abs(value), -value.real, value.imag))[:count]
+    """Eigenvalues of largest modulus at mpmath's precision: inverse iteration from NumPy's starting values.
+
+    Each step multiplies the error by about 1e-12 over the gap; a level is kept once its residual says so.
+    """
+    size = matrix.rows
+    numbers = np.array([[complex(matrix[i, j]) for j in range(size)] for i in range(size)])
+    starts, vectors = np.linalg.eig(numbers)
+    order = np.argsort(-np.abs(starts), kind="stable")[:count]
+    return [_refined(matrix, complex(starts[i]), vectors[:, i]) for i in order]
+
+
+def _refined(matrix: mpmath.matrix, start: complex, vector: np.ndarray) -> mpmath.mpc:
+    shift = mp.mpmathify(start) * (1 + mp.mpf(10) ** -13)
+    factors, pivots = mp.LU_decomp(matrix - shift * mp.eye(matrix.rows))
+    x = mp.matrix([mp.mpmathify(complex(number)) for number in vector])
+    for _ in range(12):
+        y = mp.U_solve(factors, mp.L_solve(factors, x, pivots))
+        top = max(range(len(y)), key=lambda i: abs(y[i]))
+        value, x = shift + x[top] / y[top], y / y[top]
+        if mp.norm(matrix * x - value * x) < mp.mpf(10) ** (5 - mp.dps) * mp.norm(x):
+            return mp.mpc(value)
+    raise AssertionError(f"the referee did not converge at {start}")
 
 
 def masses(values: Sequence[Any]) -> list[mpmath.mpc]:

@@ -20,7 +20,7 @@ def followed(values):
 
 
 @given(st.permutations(range(4)), st.integers(0, 3))
-def test_smooth_branches_are_found_whatever_the_order_at_each_point(order, seed):
+def test_smooth_branches_cross_and_are_found_whatever_the_order_at_each_point(order, seed):
     x = np.linspace(0, 1, 40)
     branches = np.stack([1 + x, 2 - x, 3 + 0.2 * x, 4 - 2.5 * x], axis=1)
     rng = np.random.default_rng(seed)

@@ -32,7 +32,7 @@ def torus_levels(n: int, lam: float, z: float, points: int) -> np.ndarray:
     return values[np.argsort(-np.abs(values))]
 
 
-@pytest.mark.parametrize(("n", "lam", "z", "points"), [(2, 0.2, 0.3, 60), (3, 0.15, 0.3, 30), (3, 0.05, 0.6, 24)])
+@pytest.mark.parametrize(("n", "lam", "z", "points"), [(2, 0.2, 0.3, 60), (3, 0.1, 0.3, 24), (3, 0.05, 0.6, 24)])
 def test_spectrum_against_quadrature_on_the_torus(n, lam, z, points):
     spectrum = MIXED[n].spectrum(levels=4, lam=lam, z=z)
     expected = torus_levels(n, lam, z, points)[:4]
@@ -76,7 +76,7 @@ def test_scans_and_single_points_agree():
 def test_what_needs_a_diagonal_link_says_so():
     with pytest.raises(ConvergenceError, match="mixes irreps: certification"):
         MIXED[2].certify(levels=2, lam=0.2, z=0.3)
-    with pytest.raises(ConvergenceError, match="mixes irreps: a series"):
+    with pytest.raises(ConvergenceError, match="mixes irreps: .*series"):
         MIXED[2].series("z", lam=0.2)
 
 

@@ -7,11 +7,13 @@ characters as quotients of determinants.
 
 from __future__ import annotations
 
+import math
 from math import factorial
 
 import mpmath
 import pytest
 import sympy
+from scipy.integrate import dblquad
 
 from haarloom.actions import wilson
 from haarloom.algebra.class_function import ClassFunction
@@ -83,6 +85,23 @@ def test_su3_group_integral_at_thirty_digits(beta: str) -> None:
         assert abs(mpmath.mpf(str(exact)) / expected - 1) < mpmath.mpf(10) ** -29
         k, error = wilson(G, "beta").coefficients_at([irrep], {"beta": float(beta)})
         assert abs(float(expected) - k[0]) <= error[0] + 1e-17
+
+
+@pytest.mark.parametrize("beta", [1.0, 6.0, 12.0])
+def test_su3_by_scipys_nested_quadrature(beta: float) -> None:
+    def weyl(a: float, b: float) -> float:
+        gaps = (a - b, 2 * a + b, a + 2 * b)
+        density = math.prod(4 * math.sin(gap / 2) ** 2 for gap in gaps)
+        return density * math.exp(beta / 3 * (loop(a, b) - 3))
+
+    def loop(a: float, b: float) -> float:
+        return math.cos(a) + math.cos(b) + math.cos(a + b)
+
+    options = {"epsabs": 1e-9, "epsrel": 1e-9}
+    bottom, _ = dblquad(weyl, -math.pi, math.pi, -math.pi, math.pi, **options)
+    top, _ = dblquad(lambda a, b: weyl(a, b) * loop(a, b), -math.pi, math.pi, -math.pi, math.pi, **options)
+    k, error = wilson(SU(3), beta).coefficients_at([SU(3).fundamental], {})
+    assert abs(k[0] - top / (3 * bottom)) <= error[0] + 1e-8
 
 
 def test_five_hundred_digits_against_ordinary_bessel_sums() -> None:

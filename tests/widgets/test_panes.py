@@ -305,3 +305,47 @@ def test_the_fault_line_stands_beside_the_sliders() -> None:
     assert pane.fault.endswith("What is shown is the last good result.")
     parent = next(w for w in descendants(pane) if lines[0] in getattr(w, "children", ()))
     assert pane._sliders in parent.children
+
+
+@pytest.mark.parametrize("n", [2, 4, 8])
+def test_loom_follows_a_model_of_another_group(n: int) -> None:
+    loom = hl.Loom(MODEL, spectrum={"cutoff": 4, "levels": 3}, matrix={"element": ("3", "3bar")})
+    group = hl.SU(n)
+    loom.model = hl.RingModel(hl.wilson(group, "beta"), hl.static_fermions(group, "z"))
+    assert {pane.fault for pane in (loom, *loom._panes.values())} == {""}
+    assert loom.element_pane.transfer.model == loom.spectrum_pane.spectrum.model == loom.model
+    assert loom.element_pane.element == (group.trivial.name,) * 2
+    loom.model = MODEL
+    assert loom.element_pane.transfer.model == MODEL
+
+
+def test_site_pane_gives_numbers_where_the_sum_is_too_long_to_write() -> None:
+    pane = hl.SitePane(hl.static_fermions(G, "z"))
+    pane._forms[0]._fields["copies"].control.value = "20"
+    assert pane.fault == ""
+    assert "231 characters" in pane._sums.value
+    assert repr(pane).startswith("Site weight")
+
+
+def test_a_fault_shows_its_excerpt_below_the_words() -> None:
+    pane = hl.LinkPane(MODEL.link)
+    pane._form._fields["t"].control.value = "__import__('os')"
+    (line,) = [w for w in descendants(pane) if getattr(w, "message", "")]
+    words, _, excerpt = line.value.partition("<pre>")
+    assert "has no meaning here" in words
+    assert "__import__" in excerpt
+    assert pane.weight == MODEL.link
+
+
+def test_imaginary_chemical_potential_has_a_slider_for_its_phase() -> None:
+    site = hl.static_fermions(G, "exp(I*theta)", zbar="exp(-I*theta)")
+    pane = hl.SpectrumPane(hl.RingModel(MODEL.link, site), cutoff=3, levels=3, scan="theta")
+    assert (pane.fault, pane._span_field.fault) == ("", "")
+    # C-symmetric up to conjugation: T is Hermitian there, and so all masses are real
+    assert abs(pane.spectrum.masses.imag).max() == 0
+
+
+def test_complex_matrix_is_said_to_have_no_pairs() -> None:
+    model = hl.RingModel(MODEL.link, hl.static_fermions(G, "z*exp(I*theta)"))
+    pane = hl.SpectrumPane(model, values={"theta": 0.3}, cutoff=3, levels=3)
+    assert "need not come in conjugate pairs" in pane._note.value

@@ -1,6 +1,5 @@
 """Link weights and site weights: coefficients exact, as series, or as numbers with a stated error."""
 
-from haarloom.actions.analysis import analyse_link, analyse_site, analyse_transfer
 from haarloom.actions.base import Link, Site
 from haarloom.actions.bilinear import bilinear_coupling
 from haarloom.actions.bosons import static_bosons
@@ -11,6 +10,7 @@ from haarloom.actions.exponential_coupling import exponential_coupling
 from haarloom.actions.fermions import static_fermions
 from haarloom.actions.heat_kernel import heat_kernel
 from haarloom.actions.large_coupling import diffusion_time
+from haarloom.actions.link_analysis import analyse_link, analyse_transfer
 from haarloom.actions.link_products import coupled_link, stacked_links
 from haarloom.actions.loop_coupling import loop_coupling
 from haarloom.actions.loop_field import loop_field
@@ -23,6 +23,7 @@ from haarloom.actions.potentials import logarithmic_potential, polynomial_potent
 from haarloom.actions.protocols import LinkWeight, SiteWeight
 from haarloom.actions.reduced_measure import haar_power
 from haarloom.actions.registry import REGISTRY, build
+from haarloom.actions.site_analysis import analyse_site
 from haarloom.actions.species import Species, static_species
 from haarloom.actions.torus_site import TorusSite
 from haarloom.actions.wilson import wilson

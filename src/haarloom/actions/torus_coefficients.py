@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
-from haarloom.exceptions import ConvergenceError, SizeError
+from haarloom.exceptions import ClassFunctionError, ConvergenceError, SizeError
 from haarloom.torus.alcove import alcove_grid, alcove_size
 from haarloom.torus.characters import characters
 
@@ -25,6 +25,7 @@ __all__ = ["SampledFunction", "sampled_function"]
 _MOST_TUPLES = 3_000_000  # sorted eigenphases looked through for one alcove
 _MOST_CHARACTERS = 60_000_000  # numbers in one table of characters
 _CHUNK = 1 << 22  # numbers at a time
+_SAMPLES = 6
 _ENOUGH = 64 * float(np.finfo(float).eps)
 
 Density = Callable[[NDArray[np.float64]], NDArray[Any]]
@@ -44,6 +45,7 @@ class SampledFunction:
         self.group = group
         self.density = density
         self._values: dict[int, NDArray[Any]] = {}
+        self._refuse_asymmetry()
 
     def coefficients(self, irreps: Sequence[Irrep]) -> tuple[NDArray[np.complex128], NDArray[np.float64]]:
         """∫dP χ_c* f for the irreps, and the change on the last refinement of the grid with rounding added.
@@ -64,6 +66,26 @@ class SampledFunction:
             if np.all(change <= rounding) or not self._fits(points + points // 2, len(irreps)):
                 return fine, change + rounding
             coarse = fine
+
+    def _refuse_asymmetry(self) -> None:
+        """Raise unless the function is the same for eigenphases in another order and shifted by 2π.
+
+        The alcove holds every conjugacy class once, so that nothing else would notice.
+        """
+        rng = np.random.default_rng(11)
+        phases = rng.uniform(-np.pi, np.pi, (_SAMPLES, self.group.n))
+        phases[:, -1] = -phases[:, :-1].sum(axis=1)
+        shifted = np.roll(phases, 1, axis=1)
+        shifted[:, :2] += [2 * np.pi, -2 * np.pi]
+        with np.errstate(all="ignore"):
+            one, other = (np.asarray(self.density(angles)) for angles in (phases, shifted))
+        if not np.allclose(one, other, rtol=1e-8, atol=1e-10 * float(np.abs(one).max()), equal_nan=True):
+            place = ", ".join(f"{angle:.4f}" for angle in phases[np.abs(one - other).argmax()])
+            raise ClassFunctionError(
+                f"The weight is no class function: at eigenphases ({place}) its value changes when they are "
+                f"put in "
+                "another order or shifted by 2π. Write it symmetric in all eigenphases and periodic in each."
+            )
 
     def supremum(self) -> float:
         """Largest |f| on the nodes of a grid fine enough for the trivial coefficient."""

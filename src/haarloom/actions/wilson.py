@@ -33,29 +33,28 @@ _MOST_SCANNED = 1500
 def wilson(group: SU, beta: Parameter, plaquettes: int = 1) -> Wilson:
     """Link weight of N_t plaquettes of the Wilson action.
 
-        Parameters
-        ----------
-        group : SU
-        beta : number, expression or name
-            β ≥ 0 in w(U) = exp[(β/N) Re tr U]; in two dimensions β = 2N/g² (common practice).
-        plaquettes : int
-            N_t; k_r = (w_r/w_0)^{N_t}.
+    Parameters
+    ----------
+    group : SU
+    beta : number, expression or name
+        β ≥ 0 in w(U) = exp[(β/N) Re tr U]; in two dimensions β = 2N/g² (common practice).
+    plaquettes : int
+        N_t; k_r = (w_r/w_0)^{N_t}.
 
-        Raises
-        ------
-        ParameterError
-            If β is a negative or complex number, or N_t no positive integer.
+    Raises
+    ------
+    ParameterError
+        If β is a negative or complex number, or N_t no positive integer.
 
-        References
-        ----------
-        J.-M. Drouffe, J.-B. Zuber, Phys. Rep. 102 (1983) 1: the sum of determinants of I_ν.
+    References
+    ----------
+    J.-M. Drouffe, J.-B. Zuber, Phys. Rep. 102 (1983) 1: the sum of determinants of I_ν.
 
-        Examples
-        --------
-        >>> from haarloom.algebra.class_function import ClassFunction
-    from haarloom.algebra.group import SU
-        >>> wilson(SU(2), "beta").coefficient(SU(2).fundamental)
-        besseli(2, beta)/besseli(1, beta)
+    Examples
+    --------
+    >>> from haarloom.algebra.group import SU
+    >>> wilson(SU(2), "beta").coefficient(SU(2).fundamental)
+    besseli(2, beta)/besseli(1, beta)
     """
     refuse_group("wilson", group)
     return Wilson(group, as_parameter(beta, _BETA), positive_integer("plaquettes", plaquettes))

@@ -21,7 +21,7 @@ from haarloom.numerics.parameters import checked_values, plain_numbers
 from haarloom.numerics.threads import single_threaded
 from haarloom.numerics.tracking import tracked
 from haarloom.numerics.truncation import truncate
-from haarloom.numerics.verdicts import verdicts_from
+from haarloom.numerics.verdicts import verdict_codes, verdict_words
 
 if TYPE_CHECKING:
     from haarloom.ring.model import RingModel
@@ -109,10 +109,10 @@ def masses_along(
     order = np.concatenate(
         [np.zeros((len(line), 1), dtype=np.int64), 1 + tracked(masses_from(kept))], axis=1
     )[:, :count]
-    codes = verdicts_from(kept, radius, values, real, hermitian)
+    codes = verdict_codes(kept, radius, values, real, hermitian)
     masses = masses_from(kept)
     chosen = order[:, 1:] - 1
-    verdicts = np.take_along_axis(codes, chosen, axis=1)
+    verdicts = verdict_words(np.take_along_axis(codes, chosen, axis=1))
     return MassBranches(
         parameter=parameter,
         grid=line,

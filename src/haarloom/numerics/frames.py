@@ -23,7 +23,7 @@ from haarloom.numerics.interpolation import chebyshev_decay, chebyshev_nodes, la
 from haarloom.numerics.ordering import spectral_order
 from haarloom.numerics.plane import NODES, Plane
 from haarloom.numerics.plane_images import PlanePart, plane_parts
-from haarloom.numerics.verdicts import verdicts_from
+from haarloom.numerics.verdicts import verdict_codes
 
 __all__ = ["levels_from_frames"]
 
@@ -64,7 +64,7 @@ class _Frames:
 
 def levels_from_frames(
     plane: Plane,
-) -> tuple[NDArray[np.complex128], NDArray[np.float64], NDArray[np.str_]] | int | None:
+) -> tuple[NDArray[np.complex128], NDArray[np.float64], NDArray[np.int8]] | int | None:
     """Values, radii and verdicts at every point.
 
     Where the subspaces bend too much to be interpolated, the axis across which to halve the plane;
@@ -83,7 +83,7 @@ def levels_from_frames(
     weights = [lagrange_matrix(nodes, axis) for nodes, axis in zip(frames.nodes, plane.axes, strict=True)]
     values = np.empty((rows * columns, plane.levels), dtype=complex)
     radius = np.empty((rows * columns, plane.levels))
-    verdicts = np.empty((rows * columns, plane.levels - 1), dtype="U12")
+    verdicts = np.empty((rows * columns, plane.levels - 1), dtype=np.int8)
     for part in plane_parts(plane, frames.vectors, (weights[0], weights[1])):
         found = _solved(plane, frames, part)
         values[part.points], radius[part.points], verdicts[part.points] = found
@@ -93,7 +93,7 @@ def levels_from_frames(
 
 def _solved(
     plane: Plane, frames: _Frames, part: PlanePart
-) -> tuple[NDArray[Any], NDArray[np.float64], NDArray[np.str_]]:
+) -> tuple[NDArray[Any], NDArray[np.float64], NDArray[np.int8]]:
     groups = [
         pencil_levels(part.vectors[:, group], part.images[:, group], part.beyond[:, group], part.dual)
         for group in frames.groups
@@ -103,7 +103,7 @@ def _solved(
     order = spectral_order(levels)
     levels, radii = (np.take_along_axis(array, order, axis=1) for array in (levels, radii))
     leading, radius = levels[:, : plane.levels], radii[:, : plane.levels]
-    return leading, radius, verdicts_from(leading, radius, levels, part.real, part.hermitian)
+    return leading, radius, verdict_codes(leading, radius, levels, part.real, part.hermitian)
 
 
 def _node_count(plane: Plane, axis: int) -> int | None:

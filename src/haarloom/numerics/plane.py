@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from haarloom.numerics.batch import TruncationBatch, batch_errors, complete_levels, truncate_batch
 from haarloom.numerics.bounds import mass_errors
-from haarloom.numerics.verdicts import verdicts_from
+from haarloom.numerics.verdicts import verdict_codes
 
 if TYPE_CHECKING:
     from haarloom.ring.model import RingModel
@@ -100,14 +100,14 @@ class PlaneLevels:
     Attributes
     ----------
     values, radius, verdicts
-        Eigenvalues, radii and verdicts, shapes (R, C, L), (R, C, L), (R, C, L − 1).
+        Eigenvalues, radii and verdicts (positions in ``VERDICTS``): (R, C, L), (R, C, L), (R, C, L − 1).
     cutoff, dense
         K, and whether the point was solved without a warm start, shape (R, C).
     """
 
     values: NDArray[np.complex128]
     radius: NDArray[np.float64]
-    verdicts: NDArray[np.str_]
+    verdicts: NDArray[np.int8]
     cutoff: NDArray[np.int32]
     dense: NDArray[np.bool_]
 
@@ -185,7 +185,7 @@ def _marks(plane: Plane, dense: NDArray[np.bool_]) -> tuple[NDArray[np.int32], N
 
 def dense_points(
     plane: Plane, first: NDArray[np.float64], second: NDArray[np.float64]
-) -> tuple[NDArray[Any], NDArray[np.float64], NDArray[np.str_]]:
+) -> tuple[NDArray[Any], NDArray[np.float64], NDArray[np.int8]]:
     """Values, radii and verdicts at a list of points, by LAPACK."""
     found = []
     for part in plane.stacks(len(first)):
@@ -194,7 +194,7 @@ def dense_points(
         radius = batch_errors(batch, complete_levels(batch, values, right, left), plane.levels)
         leading = values[:, : plane.levels].astype(complex)
         _look_again(plane, first[part], second[part], leading, radius)
-        found.append((leading, radius, verdicts_from(leading, radius, values, batch.real, batch.hermitian)))
+        found.append((leading, radius, verdict_codes(leading, radius, values, batch.real, batch.hermitian)))
     values, radius, verdicts = (np.concatenate(part) for part in zip(*found, strict=True))
     return values, radius, verdicts
 

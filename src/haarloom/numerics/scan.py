@@ -198,21 +198,26 @@ class _Run:
             self._here()
 
     def _measured(self) -> float:
-        """Estimated seconds of work left, from a first small chunk; it sets the size of the others."""
+        """Estimated seconds of work left, from a small chunk or two; they set the size of the others."""
+        each = self._one_chunk()
+        columns = self.grid.shape[self.grid.plane[1]]
+        if each > SLOW_POINT:
+            self.rows, self.columns = 1, max(1, min(columns, ceil(CHUNK_SECONDS / each)))
+            return each * self.left
+        # whole rows are solved together, many times cheaper than point by point
+        self.rows, self.columns = LEAST_ROWS, columns
+        each = self._one_chunk()
+        self.rows = max(LEAST_ROWS, ceil(CHUNK_SECONDS / max(each * columns, 1e-9)))
+        return each * self.left
+
+    def _one_chunk(self) -> float:
+        """Solve the next chunk here: seconds for each of its points."""
         first = self.missing()
         if not first:
             return 0.0
         result = solve_chunk(self.grid, first[0])
         self.keep(result)
-        each = result.seconds / first[0].points
-        columns = self.grid.shape[self.grid.plane[1]]
-        if each > SLOW_POINT:
-            self.rows, self.columns = 1, max(1, min(columns, ceil(CHUNK_SECONDS / each)))
-            return each * self.left
-        # whole rows are solved together, at a fifth of the price or less
-        self.rows = max(LEAST_ROWS, ceil(5 * CHUNK_SECONDS / (each * columns)))
-        self.columns = columns
-        return each * self.left / 5
+        return result.seconds / first[0].points
 
     def _resized(self, seconds: list[float]) -> None:
         """Make the next chunks smaller where the last ones took long, larger where they were short."""

@@ -128,12 +128,11 @@ def _raise_cutoffs(plane: Plane, found: PlaneLevels) -> None:
 
 
 def _packed(chunk: Chunk, found: PlaneLevels) -> ChunkResult:
-    codes = np.searchsorted(np.sort(VERDICTS), found.verdicts)
     return ChunkResult(
         chunk,
         masses_from(found.values),
         mass_errors(found.values, found.radius),
-        np.argsort(VERDICTS)[codes].astype(np.int8),
+        found.verdicts,
         found.values[:, :, 0],
         found.cutoff,
     )

@@ -12,12 +12,12 @@ import numpy as np
 from haarloom.exceptions import DocumentError
 from haarloom.numerics.scan_chunk import ChunkResult
 from haarloom.numerics.scan_grid import ScanGrid
-from haarloom.numerics.verdicts import UNDECIDED, VERDICTS
+from haarloom.numerics.verdicts import UNDECIDED, VERDICTS, verdict_words
 
 if TYPE_CHECKING:
     import xarray
 
-__all__ = ["check_same_scan", "empty_table", "fill", "read_scan", "save_scan", "scan_masses", "verdict_words"]
+__all__ = ["check_same_scan", "empty_table", "fill", "read_scan", "save_scan", "scan_masses", "verdict_table"]
 
 FORMAT = "Haarloom scan"
 VERSION = 1
@@ -178,7 +178,6 @@ def scan_masses(table: xarray.Dataset) -> xarray.DataArray:
     return masses
 
 
-def verdict_words(table: xarray.Dataset) -> xarray.DataArray:
+def verdict_table(table: xarray.Dataset) -> xarray.DataArray:
     """Verdicts of a scan in words."""
-    words = np.array(VERDICTS)[table["verdict"].values]
-    return table["verdict"].copy(data=words)
+    return table["verdict"].copy(data=verdict_words(table["verdict"].values))

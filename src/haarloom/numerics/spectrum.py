@@ -21,7 +21,7 @@ from haarloom.numerics.premises import perron_frobenius
 from haarloom.numerics.solve import solve
 from haarloom.numerics.threads import single_threaded
 from haarloom.numerics.truncation import Truncation, truncate
-from haarloom.numerics.verdicts import verdicts_from
+from haarloom.numerics.verdicts import verdict_codes, verdict_words
 
 if TYPE_CHECKING:
     from haarloom.algebra.irrep import Irrep
@@ -182,7 +182,9 @@ def _result(
         right=system.right[:, :count],
         left=system.left[:, :count],
         verdicts=tuple(
-            verdicts_from(leading, errors, system.values, truncation.real, truncation.hermitian).tolist()
+            verdict_words(
+                verdict_codes(leading, errors, system.values, truncation.real, truncation.hermitian)
+            ).tolist()
         ),
         solver=system.solver,
         status=_status(truncation, errors, chosen),

@@ -41,8 +41,11 @@ def tracked(values: NDArray[Any]) -> NDArray[np.int64]:
     for i in range(1, points):
         last = values[i - 1, order[i - 1]]
         before = values[i - 2, order[i - 2]] if i > 1 else last
-        # a merger has a square root in it: extrapolating past one would overshoot
-        guess = last + np.where(np.abs(last - before) < 0.5 * _gaps(last), last - before, 0.0)
+        earlier = values[i - 3, order[i - 3]] if i > 2 else before
+        step, bend = last - before, last - 2 * before + earlier
+        # a merger has a square root in it: extrapolating past one would overshoot; a crossing has none
+        safe = (np.abs(step) < 0.5 * _gaps(last)) | (np.abs(bend) < 0.2 * np.abs(step))
+        guess = last + np.where(safe, step, 0.0)
         # nothing to extrapolate from an infinite mass: such a level takes its place in spectral order
         guess = np.where(np.abs(last) < FAR, guess, values[i])
         cost = np.abs(guess[:, None] - values[i][None, :]) ** 2

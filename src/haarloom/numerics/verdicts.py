@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["COMPLEX", "PAIR", "REAL", "UNDECIDED", "VERDICTS", "verdicts_from"]
+__all__ = ["COMPLEX", "PAIR", "REAL", "UNDECIDED", "VERDICTS", "verdict_codes", "verdict_words"]
 
 REAL = "real"
 PAIR = "complex pair"
@@ -15,16 +15,18 @@ COMPLEX = "complex"
 UNDECIDED = "undecided"
 
 VERDICTS = (REAL, PAIR, COMPLEX, UNDECIDED)
-"""All verdicts; a scan stores their positions here."""
+"""All verdicts; arrays of verdicts hold their positions here."""
+
+_CODE = {word: np.int8(place) for place, word in enumerate(VERDICTS)}
 
 
-def verdicts_from(
+def verdict_codes(
     values: NDArray[Any],
     errors: NDArray[np.float64],
     everything: NDArray[Any],
     real: bool,
     hermitian: bool | NDArray[np.bool_],
-) -> NDArray[np.str_]:
+) -> NDArray[np.int8]:
     """One verdict for each level beyond λ_0.
 
     A disc that is centred on the real axis and holds one eigenvalue of a real T holds a real one:
@@ -41,13 +43,19 @@ def verdicts_from(
 
     Returns
     -------
-    Array of words, shape (..., L − 1).
+    Positions in ``VERDICTS``, shape (..., L − 1).
     """
     centres, radii = values[..., 1:], errors[..., 1:]
     off_axis = np.abs(np.imag(centres)) > radii
     symmetric = np.broadcast_to(np.asarray(hermitian)[..., None], centres.shape)
     if not real:
-        return np.select([symmetric, off_axis], [REAL, COMPLEX], UNDECIDED)
+        return np.where(symmetric, _CODE[REAL], np.where(off_axis, _CODE[COMPLEX], _CODE[UNDECIDED]))
     near = np.abs(everything[..., None, :] - centres[..., :, None]) <= radii[..., :, None]
     on_axis = (near.sum(axis=-1) == 1) & (np.imag(centres) == 0) & np.isfinite(radii)
-    return np.select([symmetric, off_axis, on_axis], [REAL, PAIR, REAL], UNDECIDED)
+    decided = np.where(symmetric | on_axis, _CODE[REAL], _CODE[UNDECIDED])
+    return np.where(off_axis & ~symmetric, _CODE[PAIR], decided)
+
+
+def verdict_words(codes: NDArray[np.int8]) -> NDArray[np.str_]:
+    """Verdicts in words."""
+    return np.array(VERDICTS)[codes]

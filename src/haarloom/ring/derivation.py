@@ -62,7 +62,7 @@ class Derivation:
     >>> model = hl.RingModel(hl.heat_kernel(G, "t"), hl.static_fermions(G, "z"))
     >>> derivation = model.transfer_matrix(cutoff=1).derivation("3", "3bar")
     >>> derivation.element
-    z*exp(-4*t/3)
+    z**2*exp(-4*t/3)
     >>> derivation.verify().passed
     True
     """

@@ -50,7 +50,9 @@ def step_html(step: Step, outcome: ReplayedStep | None) -> str:
     lines = "".join(
         f'<div class="hl-statement">$\\displaystyle {escape(line)}$</div>' for line in step.latex()
     )
-    return f'<li><div class="hl-step-title"><b>{escape(step.title)}</b> {mark_html(outcome)}</div>{lines}</li>'
+    return (
+        f'<li><div class="hl-step-title"><b>{escape(step.title)}</b> {mark_html(outcome)}</div>{lines}</li>'
+    )
 
 
 def mark_html(outcome: ReplayedStep | None) -> str:

@@ -22,7 +22,7 @@ class PlaneChart:
         self._points = bqplot.Scatter(
             x=[], y=[], scales=scales, colors=[INK], default_size=48, stroke_width=0
         )
-        self.figure = figure([self._trails, self._points], self._across.axis, self._up.axis, height=400)
+        self.figure = figure([self._trails, self._points], self._across.axis, self._up.axis, height=472)
 
     def draw(self, masses: np.ndarray) -> None:
         """Show the trails of a scan, masses of shape (levels, points)."""

@@ -75,6 +75,12 @@ class SpectrumPane(Pane):
         The masses along the scan, as continuous branches.
     stretches
         Ends of the stretches of the scan on which the lowest mass is one of a complex pair.
+
+    Notes
+    -----
+    Sliders hold real numbers. Write a complex fugacity in real parameters, for instance an imaginary
+    chemical potential as ``static_fermions(G, "exp(I*theta)", zbar="exp(-I*theta)")``, or ask
+    ``model.spectrum(z=0.6+0.8j, ...)`` for a single point.
     """
 
     name = "Spectrum"

@@ -36,6 +36,26 @@ async function copy(text, shown) {
   }
 }
 
+// The sliders of the host have a label beside them but no name for a screen reader.
+function nameSliders(pane) {
+  for (const slider of pane.querySelectorAll(".widget-slider")) {
+    const name = slider.querySelector(".widget-label")?.textContent ?? "";
+    slider.querySelector('[role="slider"]')?.setAttribute("aria-label", name);
+    const readout = slider.querySelector(".widget-readout");
+    readout?.setAttribute("role", "textbox");
+    readout?.setAttribute("aria-label", `value of ${name}`);
+  }
+}
+
+function watchSliders(pane) {
+  const watcher = new MutationObserver((changes) => {
+    if (changes.some((change) => change.addedNodes.length && !change.target.closest("mjx-container, svg"))) nameSliders(pane);
+  });
+  watcher.observe(pane, { childList: true, subtree: true });
+  nameSliders(pane);
+  return () => watcher.disconnect();
+}
+
 export default {
   render({ model, el }) {
     const head = element("div", "haarloom hl-head");
@@ -82,7 +102,15 @@ export default {
     showButton.addEventListener("click", onShow);
     model.on("change", draw);
     draw();
+    // The head is put into its pane only after it has been rendered.
+    let unwatch = () => {};
+    const placed = requestAnimationFrame(() => {
+      const pane = el.closest(".hl-pane");
+      if (pane) unwatch = watchSliders(pane);
+    });
     return () => {
+      cancelAnimationFrame(placed);
+      unwatch();
       clearTimeout(timer);
       model.off("change", draw);
     };
