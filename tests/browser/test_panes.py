@@ -21,7 +21,7 @@ FIRST = ROOT / "notebooks/01-from-action-to-mass.ipynb"
 
 def field(area: Locator, name: str) -> Locator:
     """The text box or menu with exactly this label."""
-    return area.get_by_label(name, exact=True)
+    return area.locator("input, select").and_(area.get_by_label(name, exact=True))
 
 
 def slide(area: Locator, name: str, keys: str, times: int = 1) -> None:

@@ -1,4 +1,4 @@
-"""Models that several tests of the numerics share; Ember is invented, its parameters for illustration only."""
+"""Models that several tests of the numerics share; Ember is invented, parameters for illustration only."""
 
 from __future__ import annotations
 

@@ -101,7 +101,9 @@ def fermions(n: int, cutoff: int, z: Any, zbar: Any = 0, copies: int = 1) -> Ele
                 if target in place:
                     row = place[target]
                     particle[row, column] = particle.get((row, column), 0) + mp.mpmathify(z) ** boxes
-                    antiparticle[column, row] = antiparticle.get((column, row), 0) + mp.mpmathify(zbar) ** boxes
+                    antiparticle[column, row] = (
+                        antiparticle.get((column, row), 0) + mp.mpmathify(zbar) ** boxes
+                    )
     site: Elements = {(i, i): mp.mpf(1) for i in range(len(wide))}
     for _ in range(copies):
         site = _product(particle, site)

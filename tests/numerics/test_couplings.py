@@ -32,7 +32,9 @@ def torus_levels(n: int, lam: float, z: float, points: int) -> np.ndarray:
     return values[np.argsort(-np.abs(values))]
 
 
-@pytest.mark.parametrize(("n", "lam", "z", "points"), [(2, 0.2, 0.3, 60), (3, 0.1, 0.3, 24), (3, 0.05, 0.6, 24)])
+@pytest.mark.parametrize(
+    ("n", "lam", "z", "points"), [(2, 0.2, 0.3, 60), (3, 0.1, 0.3, 24), (3, 0.05, 0.6, 24)]
+)
 def test_spectrum_against_quadrature_on_the_torus(n, lam, z, points):
     spectrum = MIXED[n].spectrum(levels=4, lam=lam, z=z)
     expected = torus_levels(n, lam, z, points)[:4]
@@ -70,13 +72,15 @@ def test_scans_and_single_points_agree():
     table = MIXED[2].scan(lam=[0.1, 0.2], z=0.3, progress=False)
     for row, lam in enumerate((0.1, 0.2)):
         single = MIXED[2].spectrum(levels=4, lam=lam, z=0.3)
-        assert np.allclose(table["mass_real"].values[row], single.masses.real, rtol=0, atol=single.error.max())
+        assert np.allclose(
+            table["mass_real"].values[row], single.masses.real, rtol=0, atol=single.error.max()
+        )
 
 
 def test_what_needs_a_diagonal_link_says_so():
     with pytest.raises(ConvergenceError, match="mixes irreps: certification"):
         MIXED[2].certify(levels=2, lam=0.2, z=0.3)
-    with pytest.raises(ConvergenceError, match="mixes irreps: .*series"):
+    with pytest.raises(ConvergenceError, match=r"mixes irreps: .*series"):
         MIXED[2].series("z", lam=0.2)
 
 

@@ -1,4 +1,4 @@
-"""Mergers on a line: by Newton's method to full precision, with what coalesces there; and as curves in a plane."""
+"""Mergers on a line, to full precision, with what coalesces there; and as curves in a plane."""
 
 from __future__ import annotations
 
@@ -147,7 +147,7 @@ def test_neighbouring_points_are_no_further_apart_than_the_step(boundary):
 
 
 def test_through_a_fold_with_antiparticles():
-    """In the (z, z̄) plane the boundary is mirrored at z = z̄, where the model is Hermitian: any fold found is one."""
+    """The (z, z̄) plane is mirrored at z = z̄, where the model is Hermitian: any fold found is one."""
     boundary = EMBER_BOTH.complex_boundary(z=(0.05, 1.2), zbar=(0.0, 0.9), t=1.0, step=0.04, lines=4)
     assert boundary.curves
     for curve in boundary.curves:

@@ -28,7 +28,9 @@ def test_positions_mark_what_is_left_out() -> None:
     assert positions(np.array([[0, 0], [3, 0], [-1, 1]]), 2).tolist() == [0, -1, -1]
 
 
-@pytest.mark.parametrize(("n", "cutoff", "outer", "support"), [(2, 4, 6, 5), (3, 3, 5, 4), (4, 2, 3, 2), (5, 1, 3, 2)])
+@pytest.mark.parametrize(
+    ("n", "cutoff", "outer", "support"), [(2, 4, 6, 5), (3, 3, 5, 4), (4, 2, 3, 2), (5, 1, 3, 2)]
+)
 def test_pattern_holds_the_tensor_products(n: int, cutoff: int, outer: int, support: int) -> None:
     group = hl.SU(n)
     factors = group.irreps(support)
@@ -43,7 +45,9 @@ def test_pattern_holds_the_tensor_products(n: int, cutoff: int, outer: int, supp
         }
         found = {
             (row, column): count
-            for row, column, count in zip(pattern.rows.tolist(), pattern.columns.tolist(), counts, strict=True)
+            for row, column, count in zip(
+                pattern.rows.tolist(), pattern.columns.tolist(), counts, strict=True
+            )
             if count
         }
         assert found == expected

@@ -30,7 +30,9 @@ def assert_real(spectrum):
 
 def assert_same(one, other):
     allowed = one.error.max() + other.error.max()
-    assert referees.distance(one.masses, other.masses) <= allowed + 1e-12
+    # of a pair at the last level either member may be listed
+    upper = [spectrum.masses.real + 1j * np.abs(spectrum.masses.imag) for spectrum in (one, other)]
+    assert referees.distance(*upper) <= allowed + 1e-12
 
 
 @few
@@ -99,7 +101,7 @@ def test_complex_masses_come_in_conjugate_pairs(t, z, zbar):
 @few
 @given(t=couplings, z=st.floats(0.0, 0.9), turn=st.integers(1, 2))
 def test_centre_rotations_leave_the_spectrum(t, z, turn):
-    """z → z e^{2πi/3}: P times a centre element; characters turn by their N-ality, T by a unitary diagonal."""
+    """z → z e^{2πi/3} is P times a centre element: characters turn by their N-ality."""
     rotated = EMBER.spectrum(levels=4, t=t, z=z * np.exp(2j * np.pi * turn / 3))
     assert_same(EMBER.spectrum(levels=4, t=t, z=z), rotated)
 

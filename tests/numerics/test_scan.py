@@ -1,4 +1,4 @@
-"""Maps over any number of axes: right at every point, saved, read back, resumed, and safe against failures."""
+"""Maps over any number of axes: right at every point, saved, read back, resumed, safe against failures."""
 
 from __future__ import annotations
 
@@ -16,10 +16,11 @@ import haarloom as hl
 from haarloom.exceptions import DocumentError, MissingValueError, ParameterError, ScanError
 from haarloom.numerics import scan as scan_module
 from haarloom.numerics.scan_chunk import solve_chunk
-from haarloom.numerics.scan_table import read_scan, save_scan, scan_masses, verdict_words
+from haarloom.numerics.scan_table import read_scan, save_scan, scan_masses, verdict_table
 from haarloom.numerics.verdicts import VERDICTS
 from numerics import referees
 from numerics.models import EMBER, EMBER_BOTH, SU3, TINTED
+from numerics.workers import KilledOnce
 
 
 class Inline(Executor):
@@ -71,6 +72,16 @@ def assert_same_map(one, other):
         assert referees.distance(*upper) <= allowed[place]
 
 
+def make_chunks_small(monkeypatch):
+    """Many chunks even for a map of a few hundred points."""
+    monkeypatch.setattr(scan_module, "CHUNK_SECONDS", 1e-6)
+    monkeypatch.setattr(scan_module, "LEAST_ROWS", 16)
+    monkeypatch.setattr(scan_module, "POOL_SECONDS", np.inf)
+    # however slow the machine is just now, rows are solved together
+    monkeypatch.setattr(scan_module, "SLOW_POINT", np.inf)
+    monkeypatch.setattr(scan_module._Run, "_resized", lambda *_: None)
+
+
 def small_axes(rows=6, columns=5):
     return {"z": np.linspace(0.1, 0.9, rows), "t": np.linspace(0.5, 1.5, columns)}
 
@@ -95,7 +106,7 @@ def test_names_units_and_the_model_document_travel_with_the_result():
     assert json.loads(table.attrs["fixed"]) == {"t": 1.0}
     assert table["z"].values.tolist() == [0.1, 0.2]
     assert table["level"].values.tolist() == [1, 2, 3]
-    assert verdict_words(table).values.tolist() == [["complex pair", "complex pair", "real"]] * 2
+    assert verdict_table(table).values.tolist() == [["complex pair", "complex pair", "real"]] * 2
 
 
 @pytest.mark.parametrize(
@@ -109,7 +120,11 @@ def test_names_units_and_the_model_document_travel_with_the_result():
             [{"z": 0.4, "zbar": 0.1, "t": 0.8}, {"z": 0.2, "zbar": 0.2, "t": 1.0}],
         ),
         (TINTED, {"h": [0.1, 0.3], "t": [0.9, 1.1]}, [{"h": 0.3, "t": 0.9}]),
-        (hl.RingModel(hl.wilson(SU3, "beta"), hl.static_fermions(SU3, "z")), {"beta": [5.0, 6.0], "z": 0.3}, [{"beta": 6.0}]),
+        (
+            hl.RingModel(hl.wilson(SU3, "beta"), hl.static_fermions(SU3, "z")),
+            {"beta": [5.0, 6.0], "z": 0.3},
+            [{"beta": 6.0}],
+        ),
     ],
     ids=["a line in t", "a falling line in z", "three axes", "a loop field", "Wilson"],
 )
@@ -123,7 +138,7 @@ def test_any_number_of_axes(model, axes, points):
 def test_verdicts_are_those_of_single_points():
     axes = small_axes()
     table = EMBER.scan(progress=False, **axes)
-    words = verdict_words(table)
+    words = verdict_table(table)
     for z in axes["z"][::2]:
         for t in axes["t"][::2]:
             single = EMBER.spectrum(levels=4, z=z, t=t)
@@ -175,7 +190,7 @@ def interrupting(after):
 def test_resumed_after_an_interrupt(tmp_path, monkeypatch, by_file):
     axes = {"z": np.linspace(0.1, 0.9, 4), "t": np.linspace(0.5, 1.5, 70)}
     file = tmp_path / "map.nc" if by_file else None
-    monkeypatch.setattr(scan_module, "CHUNK_SECONDS", 1e-9)
+    make_chunks_small(monkeypatch)
     monkeypatch.setattr(scan_module, "solve_chunk", interrupting(2))
     with pytest.warns(UserWarning, match=r"interrupted: \d+ of 280 points are done"):
         partial = EMBER.scan(progress=False, file=file, **axes)
@@ -205,10 +220,12 @@ def test_any_executor_of_the_standard_library_gives_the_same_map():
 
 
 def test_an_executor_that_fails_loses_nothing(tmp_path, monkeypatch):
-    monkeypatch.setattr(scan_module, "CHUNK_SECONDS", 1e-9)
-    axes = {"z": np.linspace(0.1, 0.9, 4), "t": np.linspace(0.5, 1.5, 600)}
+    make_chunks_small(monkeypatch)
+    axes = {"z": np.linspace(0.1, 0.9, 4), "t": np.linspace(0.5, 1.5, 200)}
     file = tmp_path / "map.nc"
-    with pytest.raises(ScanError, match=r"FailsAfter failed \(OSError: no room\).*done and kept in") as caught:
+    with pytest.raises(
+        ScanError, match=r"FailsAfter failed \(OSError: no room\).*done and kept in"
+    ) as caught:
         EMBER.scan(progress=False, file=file, executor=FailsAfter(1, OSError("no room")), **axes)
     kept = read_scan(file)
     assert 0 < kept["done"].values.sum() < kept["done"].size
@@ -221,41 +238,15 @@ def test_an_executor_that_is_shut_down_is_named():
     executor = ThreadPoolExecutor(1)
     executor.shutdown()
     with pytest.raises(ScanError, match=r"ThreadPoolExecutor failed.*another executor or none") as caught:
-        EMBER.scan(progress=False, executor=executor, z=[0.1, 0.2], t=np.linspace(0.5, 1.5, 70))
-    assert 0 < caught.value.partial["done"].values.sum() < 140
+        EMBER.scan(progress=False, executor=executor, z=[0.1, 0.2], t=np.linspace(0.5, 1.5, 140))
+    assert 0 < caught.value.partial["done"].values.sum() < 280
 
 
-def dies_once(flag, grid, chunk):
-    """A worker that is killed in the middle of its first chunk, once."""
-    try:
-        os.close(os.open(flag, os.O_CREAT | os.O_EXCL))
-    except FileExistsError:
-        return solve_chunk(grid, chunk)
-    os._exit(1)
-
-
-class Dying:
-    """Stands for solve_chunk in the workers; picklable."""
-
-    def __init__(self, flag):
-        self.flag, self.home = flag, os.getpid()
-
-    def __call__(self, grid, chunk):
-        return solve_chunk(grid, chunk) if os.getpid() == self.home else dies_once(self.flag, grid, chunk)
-
-
-def forked_pool(*, mp_context=None):
-    """Forked workers know this test module, which spawned ones could not import."""
-    return ProcessPoolExecutor(2, mp_context=get_context("fork"))
-
-
-@pytest.mark.filterwarnings("ignore:.*multi-threaded, use of fork.*:DeprecationWarning")
 def test_a_worker_killed_in_the_middle_loses_no_point(tmp_path, monkeypatch):
     flag = str(tmp_path / "killed")
-    monkeypatch.setattr(scan_module, "solve_chunk", Dying(flag))
-    monkeypatch.setattr(scan_module, "CHUNK_SECONDS", 1e-9)
+    monkeypatch.setattr(scan_module, "solve_chunk", KilledOnce(flag))
+    make_chunks_small(monkeypatch)
     monkeypatch.setattr(scan_module, "POOL_SECONDS", 0.0)
-    monkeypatch.setattr(scan_module, "ProcessPoolExecutor", forked_pool)
     monkeypatch.setattr(os, "cpu_count", lambda: 2)
     axes = {"z": np.linspace(0.1, 0.9, 4), "t": np.linspace(0.5, 1.5, 200)}
     table = EMBER.scan(progress=False, **axes)
@@ -265,16 +256,18 @@ def test_a_worker_killed_in_the_middle_loses_no_point(tmp_path, monkeypatch):
     assert_same_map(table, EMBER.scan(progress=False, **axes))
 
 
-@pytest.mark.filterwarnings("ignore:.*multi-threaded, use of fork.*:DeprecationWarning")
 def test_a_pool_of_the_users_whose_worker_is_killed_says_so_and_can_be_resumed(tmp_path, monkeypatch):
-    monkeypatch.setattr(scan_module, "solve_chunk", Dying(str(tmp_path / "killed")))
-    monkeypatch.setattr(scan_module, "CHUNK_SECONDS", 1e-9)
+    monkeypatch.setattr(scan_module, "solve_chunk", KilledOnce(str(tmp_path / "killed")))
+    make_chunks_small(monkeypatch)
     axes = {"z": np.linspace(0.1, 0.9, 4), "t": np.linspace(0.5, 1.5, 200)}
     file = tmp_path / "map.nc"
-    with forked_pool() as pool, pytest.raises(ScanError, match="BrokenProcessPool"):
+    with (
+        ProcessPoolExecutor(2, mp_context=get_context("spawn")) as pool,
+        pytest.raises(ScanError, match="BrokenProcessPool"),
+    ):
         EMBER.scan(progress=False, file=file, executor=pool, **axes)
     assert read_scan(file)["done"].values.any()
-    with forked_pool() as pool:
+    with ProcessPoolExecutor(2, mp_context=get_context("spawn")) as pool:
         table = EMBER.scan(progress=False, file=file, executor=pool, **axes)
     assert table.attrs["complete"] == 1
 
@@ -287,7 +280,7 @@ def test_workers_that_always_die_leave_the_work_to_this_process(monkeypatch):
         def submit(self, function, /, *arguments, **keywords):
             raise BrokenExecutor("a worker died")
 
-    monkeypatch.setattr(scan_module, "CHUNK_SECONDS", 1e-9)
+    make_chunks_small(monkeypatch)
     monkeypatch.setattr(scan_module, "POOL_SECONDS", 0.0)
     monkeypatch.setattr(scan_module, "ProcessPoolExecutor", Broken)
     monkeypatch.setattr(os, "cpu_count", lambda: 2)

@@ -24,12 +24,12 @@ def high_precision_masses(value: str, time: str, count: int):
 
 
 def test_the_ground_level_at_lowest_order():
-    """Second-order perturbation theory by hand: z·z² through 3 and 3bar, λ_0 = 1 + z³(1 + 2 k/(1 − k)) + …, k = e^{−4t/3}."""
+    """By hand, q = k/(1 − k), k = e^{−4t/3}: baryon 1, by 3 or 3bar 2q (z · z²), by both q² (z³)."""
     level = EMBER.series("z", order=3, levels=1).levels[0]
     k = sympy.exp(-4 * t / 3)
     found = level.eigenvalue[Fraction(3)]
     for time in ("1/2", "1", "2"):
-        difference = (found - (1 + 2 * k / (1 - k))).subs(t, sympy.Rational(time))
+        difference = (found - (1 + k / (1 - k)) ** 2).subs(t, sympy.Rational(time))
         assert abs(sympy.N(difference, 30)) < 1e-25
     assert level.neglected == 4
 
@@ -52,7 +52,7 @@ def test_the_fundamental_and_its_conjugate_start_degenerate_with_half_integer_po
 
 @pytest.mark.parametrize("order", [3, 4, 6])
 def test_the_first_neglected_term_shows_in_numbers(order):
-    """Halving z shrinks the difference to mpmath's masses (60 digits) by 2^(first neglected power or later)."""
+    """Halving z shrinks the difference to mpmath's masses (60 digits) by 2^(first neglected power)."""
     found = EMBER.series("z", order=order, levels=3, t=1)
     mp.dps = 60
     differences = []

@@ -64,8 +64,16 @@ def test_batched_solver_agrees_with_the_dense_one(n, link, both):
     ("model", "values", "cutoff"),
     [
         (TINTED, {"t": 0.8, "h": 0.5}, 11),
-        (hl.RingModel(hl.heat_kernel(hl.SU(2), "t"), hl.loop_field(hl.SU(2), {"2": "h"})), {"t": 0.5, "h": 0.7}, 75),
-        (hl.RingModel(hl.heat_kernel(hl.SU(3), "t"), hl.static_bosons(hl.SU(3), "z")), {"t": 0.8, "z": 0.4}, 11),
+        (
+            hl.RingModel(hl.heat_kernel(hl.SU(2), "t"), hl.loop_field(hl.SU(2), {"2": "h"})),
+            {"t": 0.5, "h": 0.7},
+            75,
+        ),
+        (
+            hl.RingModel(hl.heat_kernel(hl.SU(3), "t"), hl.static_bosons(hl.SU(3), "z")),
+            {"t": 0.8, "z": 0.4},
+            11,
+        ),
     ],
     ids=["SU(3) loop field", "SU(2) loop field", "SU(3) bosons"],
 )
@@ -108,7 +116,9 @@ def test_against_mpmath_at_fifty_digits(n, link, z, zbar, copies, cutoff):
 
 
 @pytest.mark.parametrize(
-    ("t", "z", "zbar"), [(1.0, 0.3, 0.0), (0.02, 0.3, 0.1), (0.02, 0.3, 0.0)], ids=["dense", "Krylov both", "Krylov"]
+    ("t", "z", "zbar"),
+    [(1.0, 0.3, 0.0), (0.02, 0.3, 0.1), (0.02, 0.3, 0.0)],
+    ids=["dense", "Krylov both", "Krylov"],
 )
 def test_vectors_are_biorthonormal_and_satisfy_both_equations(t, z, zbar):
     spectrum = EMBER_BOTH.spectrum(levels=6, t=t, z=z, zbar=zbar, cutoff=20 if t < 1 else 6)

@@ -109,14 +109,19 @@ def test_infinite_site_weights() -> None:
         (hl.loop_field(group, {"3": "h", "3bar": "hb"}), {"h": 0.3, "hb": 0.1}),
     ):
         model = RingModel(link, site)
-        found, larger = spectrum(model, levels=4, t=1, **values), spectrum(model, levels=4, cutoff=10, t=1, **values)
+        found, larger = (
+            spectrum(model, levels=4, t=1, **values),
+            spectrum(model, levels=4, cutoff=10, t=1, **values),
+        )
         assert (np.abs(found.masses - larger.masses) <= found.error + larger.error).all()
         assert (found.error < 1e-9).all()
 
 
 def test_link_of_finite_rank_has_infinite_masses() -> None:
     group = hl.SU(3)
-    found = spectrum(RingModel(hl.loop_coupling(group, "lam"), hl.static_fermions(group, "z")), levels=5, lam=0.1, z=0.3)
+    found = spectrum(
+        RingModel(hl.loop_coupling(group, "lam"), hl.static_fermions(group, "z")), levels=5, lam=0.1, z=0.3
+    )
     assert np.isfinite(found.masses[:2]).all()
     assert np.isinf(found.masses[2:].real).all()
     assert "rank 3" in found.status

@@ -17,7 +17,6 @@ _DIRECT_PIECE, _DETERMINANT_PIECE = 4096, 256  # angles at a time
 _NEGLIGIBLE = 80.0  # e^{−40} against the leading geodesic
 
 Floats = NDArray[np.float64]
-Complex = NDArray[np.complex128]
 
 
 def winding_sum(n: int, phases: Floats, tau: float) -> Floats:
@@ -51,7 +50,7 @@ def winding_sum(n: int, phases: Floats, tau: float) -> Floats:
     else:
         numerator, step = _one_by_one(tau, windings), _DIRECT_PIECE
 
-    def kernel(theta: Complex) -> Complex:
+    def kernel(theta: NDArray[Any]) -> NDArray[Any]:
         return np.asarray(_constant(n, tau) * numerator(theta) / _product(2 * np.sin(_gaps(theta) / 2)))
 
     starts = range(0, len(flat), step)
@@ -93,7 +92,7 @@ def _gaps(theta: NDArray[Any]) -> NDArray[Any]:
     return np.asarray(theta[..., first] - theta[..., second])
 
 
-def _product(factors: NDArray[Any]) -> Complex:
+def _product(factors: NDArray[Any]) -> NDArray[Any]:
     return np.asarray(factors.prod(axis=-1))
 
 
@@ -102,9 +101,9 @@ def _constant(n: int, tau: float) -> float:
     return float(volume * np.exp(tau * n * (n * n - 1) / 24) / prod(factorial(k) for k in range(n)))
 
 
-def _one_by_one(tau: float, windings: NDArray[np.int_]) -> Callable[[Complex], Complex]:
-    def numerator(theta: Complex) -> Complex:
-        total = np.zeros(theta.shape[:-1], dtype=complex)
+def _one_by_one(tau: float, windings: NDArray[np.int_]) -> Callable[[NDArray[Any]], NDArray[Any]]:
+    def numerator(theta: NDArray[Any]) -> NDArray[Any]:
+        total = np.zeros(theta.shape[:-1], dtype=theta.dtype)
         for winding in windings:
             moved = theta + 2 * np.pi * winding
             total += _product(_gaps(moved)) * np.exp(-(moved**2).sum(axis=-1) / (2 * tau))
@@ -113,14 +112,14 @@ def _one_by_one(tau: float, windings: NDArray[np.int_]) -> Callable[[Complex], C
     return numerator
 
 
-def _by_determinants(tau: float, most: int) -> Callable[[Complex], Complex]:
+def _by_determinants(tau: float, most: int) -> Callable[[NDArray[Any]], NDArray[Any]]:
     """The same sum for many windings.
 
     The product over i < j is a Vandermonde determinant, so for a fixed phase φ conjugate to Σ m the sum
     factorises into an N×N determinant of one-dimensional sums; a finite Fourier average over φ picks Σ m = 0.
     """
 
-    def numerator(theta: Complex) -> Complex:
+    def numerator(theta: NDArray[Any]) -> NDArray[Any]:
         n = theta.shape[-1]
         turns = np.arange(-most - 1, most + 2)
         moved = theta[..., None] + 2 * np.pi * turns
@@ -133,7 +132,7 @@ def _by_determinants(tau: float, most: int) -> Callable[[Complex], Complex]:
     return numerator
 
 
-def _with_limits(kernel: Callable[[Complex], Complex], phases: Floats, tau: float) -> Floats:
+def _with_limits(kernel: Callable[[NDArray[Any]], NDArray[Any]], phases: Floats, tau: float) -> Floats:
     """The kernel's values; where eigenvalues nearly coincide, its mean over a complex circle.
 
     0/0 is removable there. The circle moves every difference of eigenphases by a multiple of one
@@ -142,9 +141,9 @@ def _with_limits(kernel: Callable[[Complex], Complex], phases: Floats, tau: floa
     n = phases.shape[1]
     close = np.abs(np.sin(_gaps(phases) / 2)).min(axis=1) < min(0.1, 0.2 * sqrt(tau))
     result = np.empty(len(phases))
-    result[~close] = kernel(phases[~close].astype(complex)).real
-    # the Gaussian grows by e^{|shift|²/2τ} off the real axis; keep |shift|² = radius² n(n²−1)/12 near 4τ
-    radius = min(2.4 / n, sqrt(48 * tau / (n * (n * n - 1))))
+    result[~close] = kernel(phases[~close]).real
+    # the Gaussian grows by e^{|shift|²/2τ} off the real axis; keep |shift|² = radius² n(n²−1)/12 near τ
+    radius = min(1.2 / n, sqrt(12 * tau / (n * (n * n - 1))))
     nodes = radius * np.exp(2j * np.pi * (np.arange(40) + 0.5) / 40)
     moved = phases[close][:, None, :] + nodes[:, None] * (np.arange(n) - (n - 1) / 2)
     result[close] = kernel(moved).mean(axis=-1).real

@@ -138,7 +138,7 @@ def group_radii(
     owner = np.repeat(np.arange(len(groups)), [group.values.shape[1] for group in groups])
     apart = np.abs(centres[:, :, None] - centres[:, None, :])
     with np.errstate(all="ignore"):
-        # half of the distance to zero or to D is given away as a margin; the exact one changes little
+        # a tenth of the distance to D and to the rest is given away: it makes room for the radius itself
         room = (size - margins.beyond[:, None]) * 0.9
         spare = (size - rest[:, None]) * 0.9
         strengths = [_strength(group, margins, room, spare) for group in groups]

@@ -10,9 +10,7 @@ from functools import lru_cache
 import numpy as np
 from numpy.typing import NDArray
 
-from haarloom.algebra.labels import count_up_to
-
-__all__ = ["conjugation", "label_array", "label_keys", "positions", "shell_array"]
+__all__ = ["conjugation", "label_array", "label_keys", "positions"]
 
 Labels = NDArray[np.int64]
 
@@ -49,11 +47,6 @@ def label_array(rank: int, cutoff: int) -> Labels:
     labels = np.ascontiguousarray(labels[order])
     labels.flags.writeable = False
     return labels
-
-
-def shell_array(rank: int, inner: int, outer: int) -> Labels:
-    """Labels with inner < Σ a_i ≤ outer, in basis order: shape (m, rank)."""
-    return label_array(rank, outer)[count_up_to(rank, inner) :]
 
 
 def label_keys(labels: Labels, base: int) -> NDArray[np.int64]:

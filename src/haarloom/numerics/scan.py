@@ -3,14 +3,19 @@
 from __future__ import annotations
 
 import os
+import sys
 import time
 import warnings
+from collections.abc import Iterator
 from concurrent.futures import BrokenExecutor, Executor, Future, ProcessPoolExecutor, as_completed
+from contextlib import contextmanager
 from dataclasses import dataclass, field
 from itertools import islice
 from math import ceil
 from multiprocessing import get_context
 from pathlib import Path
+from pickle import PicklingError
+from types import ModuleType
 from typing import TYPE_CHECKING, Any
 
 from haarloom.exceptions import HaarloomError, ScanError
@@ -28,7 +33,7 @@ __all__ = ["scan"]
 CHUNK_SECONDS = 1.0
 """Work in a chunk: long against the cost of sending it, short against what an interrupt may lose."""
 
-POOL_SECONDS = 3.0
+POOL_SECONDS = 6.0
 """Remaining work from which starting worker processes pays."""
 
 SAVE_SECONDS = 5.0
@@ -71,8 +76,7 @@ def scan(
         at each point, whether met or not.
     executor
         Any ``concurrent.futures.Executor``: a process pool, ``client.get_executor()`` of a Dask
-        cluster. Left out, a process pool is used where there is more than one core and enough work;
-        in a script the call then belongs under ``if __name__ == "__main__":``.
+        cluster. Left out, a process pool is used where there is more than one core and enough work.
     file
         NetCDF file that the result is written to as it grows. If it holds part of the same scan, only
         what is missing is computed.
@@ -239,17 +243,23 @@ class _Run:
             self._resized([result.seconds])
 
     def _through_own_pool(self) -> None:
-        """Worker processes of our own: one that dies is replaced, and its chunk done again."""
+        """Worker processes of our own: one that dies is replaced, and its chunk done again.
+
+        What cannot be sent to another process, such as a weight class of the running script, is
+        solved in this one.
+        """
         breakdowns = 0
         while self.left:
             if breakdowns == BREAKDOWNS:
                 return self._here()
             before = self.left
-            with ProcessPoolExecutor(mp_context=get_context("spawn")) as pool:
+            with ProcessPoolExecutor(mp_context=get_context("spawn")) as pool, _main_out_of_sight():
                 try:
                     self._collect(pool)
                 except BrokenExecutor:
                     breakdowns = breakdowns + 1 if self.left == before else 0
+                except (AttributeError, TypeError, ImportError, PicklingError):
+                    return self._here()
         return None
 
     def _through(self, executor: Executor) -> None:
@@ -289,6 +299,21 @@ class _Run:
             if broken is not None:
                 raise broken
             self._resized(seconds)
+
+
+@contextmanager
+def _main_out_of_sight() -> Iterator[None]:
+    """Keep new worker processes from running the user's script again.
+
+    A spawned process imports the main module of its parent; a script without the guard
+    ``if __name__ == "__main__"`` would start the same scan there. Workers need haarloom alone.
+    """
+    main = sys.modules["__main__"]
+    sys.modules["__main__"] = ModuleType("__main__")
+    try:
+        yield
+    finally:
+        sys.modules["__main__"] = main
 
 
 def _workers() -> int:

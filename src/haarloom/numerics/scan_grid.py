@@ -67,19 +67,25 @@ class ScanGrid:
         return (max(others, key=lambda axis: lengths[axis]) if others else None), columns
 
     def chunks(self, rows_each: int, columns_each: int, skip: NDArray[np.bool_]) -> Iterator[Chunk]:
-        """All chunks of at most so many rows and columns that hold a point outside ``skip``."""
+        """Chunks of at most so many rows and columns that cover every point outside ``skip``."""
         rows, columns = self.plane
         outer = [range(size) for axis, size in enumerate(self.shape) if axis not in (rows, columns)]
-        length = 1 if rows is None else self.shape[rows]
+        whole = (0, 1 if rows is None else self.shape[rows]), (0, self.shape[columns])
         for place in product(*outer):
-            for row, column in product(
-                range(0, length, rows_each), range(0, self.shape[columns], columns_each)
-            ):
-                rows_range = (row, min(row + rows_each, length))
-                columns_range = (column, min(column + columns_each, self.shape[columns]))
-                chunk = Chunk(tuple(place), rows_range, columns_range)
-                if not skip[chunk.index(self)].all():
-                    yield chunk
+            plane = Chunk(tuple(place), *whole)
+            wanted = ~skip[plane.index(self)]
+            wanted = (wanted.T if plane.turned(self) else wanted).reshape(whole[0][1], whole[1][1])
+            for row in _runs(np.asarray(wanted.any(axis=1)), rows_each):
+                for column in _runs(np.asarray(wanted[slice(*row)].any(axis=0)), columns_each):
+                    yield Chunk(tuple(place), row, column)
+
+
+def _runs(wanted: NDArray[np.bool_], longest: int) -> Iterator[tuple[int, int]]:
+    """Stretches (start, stop) that cover the wanted entries, none longer than allowed."""
+    edges = np.flatnonzero(np.diff(np.concatenate([[False], wanted, [False]]).astype(np.int8)))
+    for start, stop in edges.reshape(-1, 2).tolist():
+        for first in range(start, stop, longest):
+            yield first, min(first + longest, stop)
 
 
 @dataclass(frozen=True)

@@ -116,7 +116,9 @@ class MassSeries:
     @cached_property
     def _functions(self) -> list[Any]:
         names = [sympy.Symbol(name) for name in parameter_names(self.model)]
-        return [sympy.lambdify(names, mass, modules="numpy") for mass in self.masses]
+        # numbers under a root may be negative and real: there the root is imaginary
+        modules = [{"sqrt": np.emath.sqrt}, "numpy"]
+        return [sympy.lambdify(names, mass, modules=modules) for mass in self.masses]
 
     def at(self, **values: float | complex) -> np.ndarray:
         """Masses from the truncated series as complex numbers, shape (L − 1,)."""

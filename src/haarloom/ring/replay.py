@@ -114,8 +114,10 @@ class Torus:
 
     def link_coefficient(self, irrep: Irrep) -> complex:
         """k_r = (w_r / w_0)^{N_t} from w(U) = Σ_r d_r w_r χ_r(U)."""
-        trivial = self.plaquette.coefficient(self.model.group.trivial)
-        ratio = self.plaquette.coefficient(irrep) / irrep.dimension / trivial
+        plaquette, trivial = self.plaquette, self.model.group.trivial
+        if irrep == trivial:
+            return 1.0  # w_0 / w_0, for which no integral is needed
+        ratio = plaquette.coefficient(irrep) / irrep.dimension / plaquette.coefficient(trivial)
         return complex(ratio**self.model.link.plaquettes)
 
     def kernel_element(self, bra: Irrep, ket: Irrep) -> complex:

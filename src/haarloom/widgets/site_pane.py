@@ -175,7 +175,7 @@ class SitePane(Pane):
         return f"  W = {self.weight.class_function().in_characters()}" if short else ""
 
     def _facts_html(self) -> str:
-        caption = f"<p>{escape(self.quantity)}. {escape(self._picture.caption)}</p>"
+        caption = f"<p>{escape(self.quantity)}. {escape(self._picture.still_caption)}</p>"
         return f"<p>{self._formula.value}</p>{self._sums.value}{self._picture.still()}{caption}"
 
 

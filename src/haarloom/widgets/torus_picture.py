@@ -41,6 +41,9 @@ class MapPicture:
     """
 
     caption = "The triangle holds each conjugacy class once; its corners are the centre: 1, ω, ω²."
+    still_caption = (
+        "Plane of the eigenphases, (θ₁ − θ₂)/√2 across and (θ₁ + θ₂ − 2θ₃)/√6 up; P = 1 in the middle."
+    )
 
     def __init__(self) -> None:
         reach = 2 * np.pi * np.sqrt(2 / 3) * 1.12
@@ -122,6 +125,7 @@ class LinePicture:
         self._angles = np.repeat(self._theta[:, None], group.n - 1, axis=1)
         inside = "e^(iθ), e^(−iθ)" if group.n == 2 else f"e^(iθ), …, e^(iθ), e^(−{group.n - 1}iθ)"
         self.caption = f"W along P = diag({inside}), a line through every element of the centre."
+        self.still_caption = self.caption
         across, self._up = Ruler("θ   [rad]"), Ruler("W", upright=True)
         across.span(-np.pi, np.pi)
         scales = {"x": across.scale, "y": self._up.scale}
