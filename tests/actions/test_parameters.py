@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 import sympy
 
+import haarloom as hl
 from haarloom.actions.parameters import DOMAINS, Field, as_parameter, evaluate
 from haarloom.exceptions import ExpressionError, MissingValueError, ParameterError
 
@@ -81,3 +82,18 @@ def test_symbols_with_hostile_names_do_no_harm() -> None:
     name = "x); import os; ("
     [value] = evaluate([sympy.Symbol(name) + 1], {name: 2.0})
     assert value == 3.0
+
+
+def test_constants_are_numbers_and_not_symbols():
+    G = hl.SU(3)
+    assert hl.static_fermions(G, "I").parameters == ()
+    assert hl.static_fermions(G, "pi").z == sympy.pi
+
+
+@pytest.mark.parametrize(
+    ("text", "words"),
+    [("inf", "finite"), ("nan", "finite"), ("oo", "finite"), ("1/0", "divides by zero"), ("1e999", "1e308")],
+)
+def test_text_that_is_no_finite_number_is_refused(text, words):
+    with pytest.raises(ParameterError, match=words):
+        hl.heat_kernel(hl.SU(3), text)

@@ -115,3 +115,12 @@ def test_masses_of_a_trace_over_the_ring():
     for sites in (1, 2, 5):
         trace = np.trace(np.linalg.matrix_power(matrix, sites))
         assert abs((spectrum.eigenvalues**sites).sum() - trace) <= 1e-12 * trace
+
+
+def test_a_common_phase_of_all_eigenvalues_makes_no_mass_complex():
+    """z = e^{iα} with z̄ = 0: W = z^{3/2} times a Hermitian function at z = 1 turned by the centre's U(1)."""
+    G = hl.SU(3)
+    model = hl.RingModel(hl.heat_kernel(G, "t"), hl.static_fermions(G, "z"))
+    spectrum = model.spectrum(levels=4, t=1, z=np.exp(0.3j))
+    assert np.all(np.abs(spectrum.masses.imag) <= spectrum.error)
+    assert "complex" not in spectrum.verdicts

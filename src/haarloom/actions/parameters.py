@@ -37,6 +37,8 @@ Parameter: TypeAlias = "int | float | complex | Fraction | Expr | str"
 Values: TypeAlias = Mapping[str, ArrayLike]
 
 _NAME = re.compile(r"[A-Za-z][A-Za-z0-9_]*\Z")
+_CONSTANTS = ("I", "pi")
+_NO_NUMBERS = ("inf", "infinity", "nan", "oo", "zoo")
 _NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eE][+-]?\d+)?(/\d+)?\Z")
 
 
@@ -133,13 +135,17 @@ def as_parameter(value: Parameter, field: Field) -> Expr:
     expression = _expression(value, field)
     if expression.is_number:
         number = complex(expression)
+        if not np.isfinite(number):
+            raise ParameterError(
+                f"{field.name} = {value} is beyond what a double can hold: give a finite number below 1e308."
+            )
         field.check(np.asarray(number.real if number.imag == 0 else number))
     return expression
 
 
 def _expression(value: Parameter, field: Field) -> Expr:
     if isinstance(value, str):
-        return _from_text(value.strip())
+        return _from_text(value.strip(), field)
     if isinstance(value, bool) or not isinstance(value, int | float | complex | Fraction | Expr | np.number):
         raise ParameterError(
             f"{field.name} = {value!r} is a {type(value).__name__}; give a number, a SymPy expression "
@@ -163,11 +169,15 @@ def _exact_number(value: int | float | complex | Expr, field: Field) -> Expr:
     return sympy.sympify(value)
 
 
-def _from_text(text: str) -> Expr:
-    if _NAME.match(text):
+def _from_text(text: str, field: Field) -> Expr:
+    if text in _NO_NUMBERS:
+        raise ParameterError(f"{field.name} = {text} is not allowed: {field.name} must be a finite number.")
+    if _NAME.match(text) and text not in _CONSTANTS:
         return Symbol(text)
     if _NUMBER.match(text):
         head, _, denominator = text.partition("/")
+        if denominator and int(denominator) == 0:
+            raise ParameterError(f"{field.name} = {text} divides by zero: give a finite number.")
         return sympy.Rational(head) / (sympy.Integer(denominator) if denominator else 1)
     # the grammar for whole expressions lives with the documents, a later station: loaded on use
     from haarloom.documents.expressions import parse_expression

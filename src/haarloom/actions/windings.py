@@ -143,7 +143,7 @@ def _with_limits(kernel: Callable[[NDArray[Any]], NDArray[Any]], phases: Floats,
     result = np.empty(len(phases))
     result[~close] = kernel(phases[~close]).real
     # the Gaussian grows by e^{|shift|²/2τ} off the real axis; keep |shift|² = radius² n(n²−1)/12 near τ
-    radius = min(1.2 / n, sqrt(12 * tau / (n * (n * n - 1))))
+    radius = min(2.4 / n, sqrt(16 * tau / (n * (n * n - 1))))
     nodes = radius * np.exp(2j * np.pi * (np.arange(40) + 0.5) / 40)
     moved = phases[close][:, None, :] + nodes[:, None] * (np.arange(n) - (n - 1) / 2)
     result[close] = kernel(moved).mean(axis=-1).real

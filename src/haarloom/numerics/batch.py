@@ -89,20 +89,22 @@ class TruncationBatch:
         largest = np.abs(self.matrix).max(axis=(1, 2))
         return np.asarray(np.abs(self.matrix - turned).max(axis=(1, 2)) <= 8 * EPS * largest)
 
-    def solved(self, left: bool = True) -> tuple[NDArray[Any], NDArray[Any], NDArray[Any]]:
-        """All eigenvalues (M, n) in spectral order, right and left vectors (M, n, n) in columns.
-
-        Without ``left`` the right vectors stand in the place of the left ones.
-        """
+    def solved(self) -> tuple[NDArray[Any], NDArray[Any], NDArray[Any]]:
+        """All eigenvalues (M, n) in spectral order, right and left vectors (M, n, n) in columns."""
         symmetric = bool(self.hermitian.all())
-        if symmetric:
-            values, right = np.linalg.eigh(self.matrix)
-        else:
-            values, right = np.linalg.eig(self.matrix)
-        order = spectral_order(values)
-        right = np.take_along_axis(right, order[:, None, :], axis=2)
-        dual = (right.conj() if symmetric else biorthogonal(right)) if left else right
-        return np.take_along_axis(values, order, axis=1), right, dual
+        values, right = np.linalg.eigh(self.matrix) if symmetric else np.linalg.eig(self.matrix)
+        values, right = _in_order(values, right)
+        return values, right, right.conj() if symmetric else biorthogonal(right)
+
+    def leading(self) -> tuple[NDArray[Any], NDArray[Any]]:
+        """All eigenvalues and right vectors without the left ones."""
+        return _in_order(*np.linalg.eig(self.matrix))
+
+
+def _in_order(values: NDArray[Any], right: NDArray[Any]) -> tuple[NDArray[Any], NDArray[Any]]:
+    order = spectral_order(values)
+    vectors = np.take_along_axis(right, order[:, None, :], axis=2)
+    return np.take_along_axis(values, order, axis=1), vectors
 
 
 def truncate_batch(model: RingModel, cutoff: int, values: Mapping[str, NDArray[Any]]) -> TruncationBatch:

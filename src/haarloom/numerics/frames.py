@@ -21,8 +21,8 @@ from haarloom.numerics.batch import truncate_batch
 from haarloom.numerics.group_levels import group_radii, pencil_levels
 from haarloom.numerics.interpolation import chebyshev_decay, chebyshev_nodes, lagrange_matrix
 from haarloom.numerics.ordering import spectral_order
-from haarloom.numerics.plane import NODES, Plane
-from haarloom.numerics.plane_images import PlanePart, plane_parts
+from haarloom.numerics.plane import MANY_FAILURES, NODES, Plane
+from haarloom.numerics.plane_images import PlanePart, plane_parts, point_parts
 from haarloom.numerics.verdicts import verdict_codes
 
 __all__ = ["levels_from_frames"]
@@ -38,6 +38,12 @@ SMOOTH = 1e-8
 
 BEND = 1e-6
 """Estimated error of an interpolated subspace from which on it is not evaluated."""
+
+SAMPLE = 4
+"""Of so many points along each axis one is tried before a patch is evaluated in full."""
+
+APPLICATIONS = 2
+"""Applications of T at points that missed the tolerance at first."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -79,16 +85,42 @@ def levels_from_frames(
     frames = _frames(plane, (counts[0], counts[1]))
     if frames is None:
         return None
+    sample = replace(plane, axes=(plane.axes[0][::SAMPLE], plane.axes[1][::SAMPLE]))
+    if not sample.accepts(*_everywhere(sample, frames)[:2]).mean() >= 1 - MANY_FAILURES:
+        return None
+    found = _everywhere(plane, frames)
+    _improved(plane, frames, found)
+    return found
+
+
+Levels = tuple[NDArray[np.complex128], NDArray[np.float64], NDArray[np.int8]]
+
+
+def _everywhere(plane: Plane, frames: _Frames) -> Levels:
+    """Values, radii and verdicts at all points from the interpolated subspaces."""
     rows, columns = plane.shape
-    weights = [lagrange_matrix(nodes, axis) for nodes, axis in zip(frames.nodes, plane.axes, strict=True)]
     values = np.empty((rows * columns, plane.levels), dtype=complex)
     radius = np.empty((rows * columns, plane.levels))
     verdicts = np.empty((rows * columns, plane.levels - 1), dtype=np.int8)
-    for part in plane_parts(plane, frames.vectors, (weights[0], weights[1])):
-        found = _solved(plane, frames, part)
-        values[part.points], radius[part.points], verdicts[part.points] = found
+    for part in plane_parts(plane, frames.vectors, _weights(plane, frames)):
+        values[part.points], radius[part.points], verdicts[part.points] = _solved(plane, frames, part)
     shape = (rows, columns, -1)
     return values.reshape(shape), radius.reshape(shape), verdicts.reshape(rows, columns, plane.levels - 1)
+
+
+def _improved(plane: Plane, frames: _Frames, found: Levels) -> None:
+    """Points that miss the tolerance, once more with T applied to their subspaces."""
+    places = np.nonzero(~plane.accepts(found[0], found[1]))
+    weights = _weights(plane, frames)
+    for part in point_parts(plane, frames.vectors, weights, (places[0], places[1]), APPLICATIONS):
+        better = _solved(plane, frames, part)
+        for array, new in zip(found, better, strict=True):
+            array[places[0][part.points], places[1][part.points]] = new
+
+
+def _weights(plane: Plane, frames: _Frames) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    first, second = (lagrange_matrix(n, axis) for n, axis in zip(frames.nodes, plane.axes, strict=True))
+    return first, second
 
 
 def _solved(
@@ -133,7 +165,7 @@ def _frames(plane: Plane, counts: tuple[int, int]) -> _Frames | None:
     batch = truncate_batch(plane.model, plane.cutoff, plane.values(first, second))
     if not batch.mirrored:
         return None
-    values, right, _ = batch.solved(left=False)
+    values, right = batch.leading()
     groups, rest = _groups(np.abs(values), plane.levels)
     if not groups:
         return None

@@ -23,7 +23,7 @@ from haarloom.numerics.plane import Plane
 from haarloom.numerics.site_components import SiteComponents, outward_reach, site_components
 from haarloom.numerics.truncation import EPS, character_errors, input_errors, phase_of
 
-__all__ = ["PlanePart", "plane_parts"]
+__all__ = ["PlanePart", "plane_parts", "point_parts"]
 
 FEW_COMPONENTS = 16
 """Most irreps in W for which images of all components are worth preparing."""
@@ -74,26 +74,45 @@ def plane_parts(
     site_names = {symbol.name for symbol in plane.model.site.parameters}
     separate = plane.names[1] not in link_names and plane.names[0] not in site_names
     few = plane.model.site.finite and len(plane.model.site.support()) <= FEW_COMPONENTS
-    return _by_rows(plane, frames, weights) if separate and few else _by_points(plane, frames, weights)
+    if separate and few:
+        return _by_rows(plane, frames, weights)
+    rows, columns = np.divmod(np.arange(plane.shape[0] * plane.shape[1]), plane.shape[1])
+    return point_parts(plane, frames, weights, (rows, columns))
 
 
-def _by_points(
-    plane: Plane, frames: NDArray[Any], weights: tuple[NDArray[np.float64], NDArray[np.float64]]
+def point_parts(
+    plane: Plane,
+    frames: NDArray[Any],
+    weights: tuple[NDArray[np.float64], NDArray[np.float64]],
+    places: tuple[NDArray[np.int64], NDArray[np.int64]],
+    applications: int = 0,
 ) -> Iterator[PlanePart]:
-    rows, columns = plane.shape
+    """A list of points of a plane, some at a time.
+
+    Parameters
+    ----------
+    places
+        Rows and columns of the points.
+    applications
+        How often T is applied to the interpolated vectors first: each draws them closer to the
+        leading levels.
+    """
     count, size = frames.shape[2:]
     flat = frames.reshape(-1, count * size)
     mirror = conjugation(plane.model.group.rank, plane.cutoff)
-    for part in plane.stacks(rows * columns):
-        row, column = np.divmod(np.arange(part.start, part.stop), columns)
+    for part in plane.stacks(len(places[0])):
+        row, column = places[0][part], places[1][part]
         share = (weights[0][row][:, :, None] * weights[1][column][:, None, :]).reshape(len(row), -1)
-        vectors = (share @ flat).reshape(-1, count, size)
-        values = plane.values(plane.axes[0][row], plane.axes[1][column])
-        batch = truncate_batch(plane.model, plane.cutoff, values)
-        upright = np.swapaxes(vectors, 1, 2)
+        upright = np.swapaxes((share @ flat).reshape(-1, count, size), 1, 2)
+        batch = truncate_batch(
+            plane.model, plane.cutoff, plane.values(plane.axes[0][row], plane.axes[1][column])
+        )
+        for _ in range(applications):
+            upright = batch.matrix @ upright
         inside, beyond = (np.swapaxes(matrix @ upright, 1, 2) for matrix in (batch.matrix, batch.upwards))
         margins = Margins(batch.norm * batch.outside, batch.rest, batch.rim, batch.noise)
         dual = (batch.phase[:, None, :size], mirror)
+        vectors = np.swapaxes(upright, 1, 2)
         yield PlanePart(part, vectors, inside, beyond, dual, margins, batch.hermitian, batch.real)
 
 

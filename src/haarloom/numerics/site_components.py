@@ -84,8 +84,18 @@ def negligible_beyond(site: SiteWeight, values: Mapping[str, Any], part: float) 
 
     if not small(FARTHEST):
         raise ConvergenceError(
-            f"the characters of the site weight do not die out within Σ a_i = {FARTHEST} at {dict(values)}: "
+            f"the characters of the site weight do not die out by Σ a_i = {FARTHEST} at {_spans(values)}: "
             "its parameters are too close to the edge of their domain; move them inwards."
         )
     # Tails fall with the steps, and a product's may cost a transform each: halve instead of counting up.
     return bisect_left(range(1, FARTHEST), True, key=small) + 1
+
+
+def _spans(values: Mapping[str, Any]) -> str:
+    """Values for a message; of an array its smallest and largest."""
+    texts = []
+    for name, value in values.items():
+        numbers = np.asarray(value).reshape(-1)
+        ends = (numbers[0],) if numbers.size == 1 else (numbers.min(), numbers.max())
+        texts.append(f"{name} = " + " … ".join(f"{end:.6g}" for end in ends))
+    return ", ".join(texts)

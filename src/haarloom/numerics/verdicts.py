@@ -49,7 +49,11 @@ def verdict_codes(
     off_axis = np.abs(np.imag(centres)) > radii
     symmetric = np.broadcast_to(np.asarray(hermitian)[..., None], centres.shape)
     if not real:
-        return np.where(symmetric, _CODE[REAL], np.where(off_axis, _CODE[COMPLEX], _CODE[UNDECIDED]))
+        # λ_0 itself may lie off the axis; a mass is real where λ_n/λ_0 is.
+        ground, ratio = values[..., :1], centres / values[..., :1]
+        spread = (radii + np.abs(ratio) * errors[..., :1]) / np.abs(ground)
+        turned = np.abs(np.imag(ratio)) > spread
+        return np.where(symmetric, _CODE[REAL], np.where(turned, _CODE[COMPLEX], _CODE[UNDECIDED]))
     near = np.abs(everything[..., None, :] - centres[..., :, None]) <= radii[..., :, None]
     on_axis = (near.sum(axis=-1) == 1) & (np.imag(centres) == 0) & np.isfinite(radii)
     decided = np.where(symmetric | on_axis, _CODE[REAL], _CODE[UNDECIDED])
