@@ -42,9 +42,6 @@ BEND = 1e-6
 SAMPLE = 4
 """Of so many points along each axis one is tried before a patch is evaluated in full."""
 
-APPLICATIONS = 2
-"""Applications of T at points that missed the tolerance at first."""
-
 
 @dataclass(frozen=True, eq=False)
 class _Frames:
@@ -112,15 +109,33 @@ def _improved(plane: Plane, frames: _Frames, found: Levels) -> None:
     """Points that miss the tolerance, once more with T applied to their subspaces."""
     places = np.nonzero(~plane.accepts(found[0], found[1]))
     weights = _weights(plane, frames)
-    for part in point_parts(plane, frames.vectors, weights, (places[0], places[1]), APPLICATIONS):
+    for part in point_parts(plane, frames.vectors, weights, (places[0], places[1]), frames.groups):
         better = _solved(plane, frames, part)
         for array, new in zip(found, better, strict=True):
-            array[places[0][part.points], places[1][part.points]] = new
+            np.asarray(array)[places[0][part.points], places[1][part.points]] = new
 
 
 def _weights(plane: Plane, frames: _Frames) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    first, second = (lagrange_matrix(n, axis) for n, axis in zip(frames.nodes, plane.axes, strict=True))
+    first, second = (
+        lagrange_matrix(nodes, axis) if len(axis) == 1 else lagrange_matrix(*_stretched(nodes, axis))
+        for nodes, axis in zip(frames.nodes, plane.axes, strict=True)
+    )
     return first, second
+
+
+def _stretched(
+    nodes: NDArray[np.float64], axis: NDArray[np.float64]
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Square roots of a positive parameter: subspaces bend most near 0 (measured in t and in z)."""
+    return (np.sqrt(nodes), np.sqrt(axis)) if axis.min() >= 0 else (nodes, axis)
+
+
+def _nodes(axis: NDArray[np.float64], count: int) -> NDArray[np.float64]:
+    if len(axis) == 1:
+        return axis
+    if axis.min() >= 0:
+        return np.asarray(chebyshev_nodes(np.sqrt(axis.min()), np.sqrt(axis.max()), count) ** 2)
+    return chebyshev_nodes(axis.min(), axis.max(), count)
 
 
 def _solved(
@@ -157,10 +172,7 @@ def _node_count(plane: Plane, axis: int) -> int | None:
 
 
 def _frames(plane: Plane, counts: tuple[int, int]) -> _Frames | None:
-    nodes = tuple(
-        chebyshev_nodes(axis.min(), axis.max(), count) if len(axis) > 1 else axis
-        for axis, count in zip(plane.axes, counts, strict=True)
-    )
+    nodes = tuple(_nodes(axis, count) for axis, count in zip(plane.axes, counts, strict=True))
     first, second = (grid.reshape(-1) for grid in np.meshgrid(*nodes, indexing="ij"))
     batch = truncate_batch(plane.model, plane.cutoff, plane.values(first, second))
     if not batch.mirrored:

@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["GroupNumbers", "Margins", "group_radii", "pencil_levels"]
+__all__ = ["GroupNumbers", "Margins", "group_radii", "pencil_levels", "purge"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -76,6 +77,22 @@ def pencil_levels(
     left = right * _size(inverse)
     departure = np.sqrt(np.maximum(_size(block) ** 2 - (np.abs(values) ** 2).sum(axis=1), 0.0))
     return GroupNumbers(values, right, left, _size(beyond), _size(residual), departure)
+
+
+def purge(
+    vectors: NDArray[Any], dual: tuple[NDArray[Any] | None, NDArray[np.int64]], groups: Sequence[slice]
+) -> NDArray[Any]:
+    """Take out of each group what it holds of the groups before it, by the form Vᵀ ΦJ V."""
+    factors, order = dual
+    found = vectors.copy()
+    for place, group in enumerate(groups):
+        for before in groups[:place]:
+            basis = found[:, before]
+            partner = np.take(basis, order, axis=2) * (1.0 if factors is None else factors)
+            overlap = np.einsum("pan,pbn->pab", partner, basis)
+            share = _inverse(overlap) @ np.einsum("pan,pbn->pab", partner, found[:, group])
+            found[:, group] -= np.swapaxes(share, 1, 2) @ basis
+    return found
 
 
 def _single(

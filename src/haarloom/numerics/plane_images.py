@@ -6,7 +6,7 @@ matrix product for a whole row; otherwise T is stacked point by point.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 from typing import Any
@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from haarloom.algebra.labels import count_up_to
 from haarloom.numerics.batch import truncate_batch
-from haarloom.numerics.group_levels import Margins
+from haarloom.numerics.group_levels import Margins, purge
 from haarloom.numerics.labels import conjugation
 from haarloom.numerics.link_numbers import link_coefficients_at
 from haarloom.numerics.plane import Plane
@@ -85,7 +85,7 @@ def point_parts(
     frames: NDArray[Any],
     weights: tuple[NDArray[np.float64], NDArray[np.float64]],
     places: tuple[NDArray[np.int64], NDArray[np.int64]],
-    applications: int = 0,
+    purged: Sequence[slice] = (),
 ) -> Iterator[PlanePart]:
     """A list of points of a plane, some at a time.
 
@@ -93,9 +93,10 @@ def point_parts(
     ----------
     places
         Rows and columns of the points.
-    applications
-        How often T is applied to the interpolated vectors first: each draws them closer to the
-        leading levels.
+    purged
+        Groups of vectors. Where they are given, T is applied once to the interpolated vectors, which
+        damps what they hold of the levels left out, and each group is rid of what it holds of those
+        before it, which that makes larger.
     """
     count, size = frames.shape[2:]
     flat = frames.reshape(-1, count * size)
@@ -107,11 +108,12 @@ def point_parts(
         batch = truncate_batch(
             plane.model, plane.cutoff, plane.values(plane.axes[0][row], plane.axes[1][column])
         )
-        for _ in range(applications):
-            upright = batch.matrix @ upright
+        dual = (batch.phase[:, None, :size], mirror)
+        if purged:
+            applied = np.swapaxes(batch.matrix @ upright, 1, 2)
+            upright = np.swapaxes(purge(applied, dual, purged), 1, 2)
         inside, beyond = (np.swapaxes(matrix @ upright, 1, 2) for matrix in (batch.matrix, batch.upwards))
         margins = Margins(batch.norm * batch.outside, batch.rest, batch.rim, batch.noise)
-        dual = (batch.phase[:, None, :size], mirror)
         vectors = np.swapaxes(upright, 1, 2)
         yield PlanePart(part, vectors, inside, beyond, dual, margins, batch.hermitian, batch.real)
 

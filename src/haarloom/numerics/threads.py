@@ -7,7 +7,6 @@ and stalls where other processes hold the cores.
 from __future__ import annotations
 
 from collections.abc import Callable
-from contextlib import AbstractContextManager, nullcontext
 from functools import lru_cache, wraps
 from typing import Any, ParamSpec, TypeVar
 
@@ -18,31 +17,20 @@ R = TypeVar("R")
 
 
 def single_threaded(function: Callable[P, R]) -> Callable[P, R]:
-    """Run a function with BLAS on one thread, if threadpoolctl is installed."""
+    """Run a function with BLAS on one thread."""
 
     @wraps(function)
     def wrapped(*arguments: P.args, **keywords: P.kwargs) -> R:
-        with _limit():
+        with _controller().limit(limits=1, user_api="blas"):
             return function(*arguments, **keywords)
 
     return wrapped
 
 
-def _limit() -> AbstractContextManager[Any]:
-    controller = _controller()
-    if controller is None:
-        return nullcontext()
-    limit: AbstractContextManager[Any] = controller.limit(limits=1, user_api="blas")
-    return limit
-
-
 @lru_cache(maxsize=1)
 def _controller() -> Any:
-    try:
-        from threadpoolctl import ThreadpoolController
-    except ImportError:
-        return None
     # the controller sees only what is loaded: SciPy brings a BLAS of its own
     import scipy.linalg  # noqa: F401
+    from threadpoolctl import ThreadpoolController
 
     return ThreadpoolController()
