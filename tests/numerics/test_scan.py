@@ -14,13 +14,13 @@ import xarray
 
 import haarloom as hl
 from haarloom.exceptions import DocumentError, MissingValueError, ParameterError, ScanError
-from haarloom.numerics import scan as scan_module
+from haarloom.numerics import scan_run, scan_workers
 from haarloom.numerics.scan_chunk import solve_chunk
 from haarloom.numerics.scan_table import read_scan, save_scan, scan_masses, verdict_table
 from haarloom.numerics.verdicts import VERDICTS
 from numerics import referees
 from numerics.models import EMBER, EMBER_BOTH, SU3, TINTED
-from numerics.workers import KilledOnce
+from numerics.workers import KilledOnce, SlowAtHome
 
 
 class Inline(Executor):
@@ -74,12 +74,9 @@ def assert_same_map(one, other):
 
 def make_chunks_small(monkeypatch):
     """Many chunks even for a map of a few hundred points."""
-    monkeypatch.setattr(scan_module, "CHUNK_SECONDS", 1e-6)
-    monkeypatch.setattr(scan_module, "LEAST_ROWS", 16)
-    monkeypatch.setattr(scan_module, "POOL_SECONDS", np.inf)
-    # however slow the machine is just now, rows are solved together
-    monkeypatch.setattr(scan_module, "SLOW_POINT", np.inf)
-    monkeypatch.setattr(scan_module._Run, "_resized", lambda *_: None)
+    monkeypatch.setattr(scan_run, "CHUNK_SECONDS", 1e-6)
+    monkeypatch.setattr(scan_run, "LEAST_ROWS", 16)
+    monkeypatch.setattr(scan_run, "POOL_SECONDS", np.inf)
 
 
 def small_axes(rows=6, columns=5):
@@ -169,7 +166,7 @@ def test_round_trip_through_netcdf(tmp_path):
 def test_a_finished_file_is_not_computed_again(tmp_path, monkeypatch):
     file = tmp_path / "map.nc"
     table = EMBER.scan(progress=False, file=file, **small_axes())
-    monkeypatch.setattr(scan_module, "solve_chunk", lambda *_: pytest.fail("computed again"))
+    monkeypatch.setattr(scan_run, "solve_chunk", lambda *_: pytest.fail("computed again"))
     xarray.testing.assert_identical(table, EMBER.scan(progress=False, file=file, **small_axes()))
 
 
@@ -191,7 +188,7 @@ def test_resumed_after_an_interrupt(tmp_path, monkeypatch, by_file):
     axes = {"z": np.linspace(0.1, 0.9, 4), "t": np.linspace(0.5, 1.5, 70)}
     file = tmp_path / "map.nc" if by_file else None
     make_chunks_small(monkeypatch)
-    monkeypatch.setattr(scan_module, "solve_chunk", interrupting(2))
+    monkeypatch.setattr(scan_run, "solve_chunk", interrupting(2))
     with pytest.warns(UserWarning, match=r"interrupted: \d+ of 280 points are done"):
         partial = EMBER.scan(progress=False, file=file, **axes)
     assert partial.attrs["complete"] == 0
@@ -203,7 +200,7 @@ def test_resumed_after_an_interrupt(tmp_path, monkeypatch, by_file):
         computed.append(int((np.zeros(grid.shape)[chunk.index(grid)] == 0).sum()))
         return solve_chunk(grid, chunk)
 
-    monkeypatch.setattr(scan_module, "solve_chunk", counting)
+    monkeypatch.setattr(scan_run, "solve_chunk", counting)
     whole = EMBER.scan(progress=False, file=file, resume=None if by_file else partial, **axes)
     assert whole.attrs["complete"] == 1
     assert sum(computed) < 280, "what was done is not computed again"
@@ -244,10 +241,10 @@ def test_an_executor_that_is_shut_down_is_named():
 
 def test_a_worker_killed_in_the_middle_loses_no_point(tmp_path, monkeypatch):
     flag = str(tmp_path / "killed")
-    monkeypatch.setattr(scan_module, "solve_chunk", KilledOnce(flag))
+    monkeypatch.setattr(scan_run, "solve_chunk", KilledOnce(flag))
     make_chunks_small(monkeypatch)
-    monkeypatch.setattr(scan_module, "POOL_SECONDS", 0.0)
-    monkeypatch.setattr(os, "cpu_count", lambda: 2)
+    monkeypatch.setattr(scan_run, "POOL_SECONDS", 0.0)
+    monkeypatch.setattr(scan_run, "cores", lambda: 2)
     axes = {"z": np.linspace(0.1, 0.9, 4), "t": np.linspace(0.5, 1.5, 200)}
     table = EMBER.scan(progress=False, **axes)
     assert os.path.exists(flag), "no worker was killed: the test would say nothing"
@@ -257,7 +254,7 @@ def test_a_worker_killed_in_the_middle_loses_no_point(tmp_path, monkeypatch):
 
 
 def test_a_pool_of_the_users_whose_worker_is_killed_says_so_and_can_be_resumed(tmp_path, monkeypatch):
-    monkeypatch.setattr(scan_module, "solve_chunk", KilledOnce(str(tmp_path / "killed")))
+    monkeypatch.setattr(scan_run, "solve_chunk", KilledOnce(str(tmp_path / "killed")))
     make_chunks_small(monkeypatch)
     axes = {"z": np.linspace(0.1, 0.9, 4), "t": np.linspace(0.5, 1.5, 200)}
     file = tmp_path / "map.nc"
@@ -272,18 +269,49 @@ def test_a_pool_of_the_users_whose_worker_is_killed_says_so_and_can_be_resumed(t
     assert table.attrs["complete"] == 1
 
 
+def test_worker_processes_share_a_long_scan(tmp_path, monkeypatch):
+    monkeypatch.setattr(scan_run, "solve_chunk", SlowAtHome(str(tmp_path)))
+    make_chunks_small(monkeypatch)
+    monkeypatch.setattr(scan_run, "POOL_SECONDS", 0.0)
+    monkeypatch.setattr(scan_run, "cores", lambda: 2)
+    axes = {"z": np.linspace(0.1, 0.9, 4), "t": np.linspace(0.5, 1.5, 200)}
+    table = EMBER.scan(progress=False, **axes)
+    assert list(tmp_path.iterdir()), "no worker took part: the test would say nothing"
+    assert table.attrs["complete"] == 1
+    monkeypatch.undo()
+    assert_same_map(table, EMBER.scan(progress=False, **axes))
+
+
+def test_a_model_that_cannot_be_sent_is_scanned_in_this_process(monkeypatch):
+    monkeypatch.setattr(scan_run, "POOL_SECONDS", 0.0)
+    monkeypatch.setattr(scan_run, "cores", lambda: 2)
+    monkeypatch.setattr(scan_run, "Workers", lambda *_: pytest.fail("workers were started"))
+    make_chunks_small(monkeypatch)
+    monkeypatch.setattr(scan_run, "POOL_SECONDS", 0.0)
+    monkeypatch.setattr(scan_run, "sendable", lambda *_: False)
+    assert EMBER.scan(progress=False, z=[0.1, 0.2], t=np.linspace(0.5, 1.5, 130)).attrs["complete"] == 1
+
+
+def test_what_the_running_script_defines_is_not_sendable(monkeypatch):
+    class Local:
+        pass
+
+    assert scan_workers.sendable(EMBER)
+    assert not scan_workers.sendable(EMBER, Local())
+
+
 def test_workers_that_always_die_leave_the_work_to_this_process(monkeypatch):
     class Broken(Inline):
-        def __init__(self, **_):
+        def __init__(self, *_, **__):
             pass
 
         def submit(self, function, /, *arguments, **keywords):
             raise BrokenExecutor("a worker died")
 
     make_chunks_small(monkeypatch)
-    monkeypatch.setattr(scan_module, "POOL_SECONDS", 0.0)
-    monkeypatch.setattr(scan_module, "ProcessPoolExecutor", Broken)
-    monkeypatch.setattr(os, "cpu_count", lambda: 2)
+    monkeypatch.setattr(scan_run, "POOL_SECONDS", 0.0)
+    monkeypatch.setattr(scan_workers, "ProcessPoolExecutor", Broken)
+    monkeypatch.setattr(scan_run, "cores", lambda: 2)
     table = EMBER.scan(progress=False, z=[0.1, 0.2], t=np.linspace(0.5, 1.5, 130))
     assert table.attrs["complete"] == 1
 
@@ -402,11 +430,11 @@ def test_a_failed_write_leaves_the_old_file(tmp_path, monkeypatch):
         ({"z": [0.1, 0.2], "t": [0.5, -1.0]}, ParameterError, "must be a real number ≥ 0"),
         ({"z": [0.1], "t": 1, "tolerance": 0}, ParameterError, "tolerance = 0"),
         ({"z": [0.1], "t": 1, "tolerance": 2}, ParameterError, "tolerance = 2"),
-        ({"z": [0.1], "t": 1, "levels": 0}, ParameterError, "levels = 0"),
+        ({"z": [0.1], "t": 1, "levels": 0}, ParameterError, "levels.* 0"),
     ],
 )
 def test_bad_axes_are_refused_before_anything_is_computed(given_, error, message, monkeypatch):
-    monkeypatch.setattr(scan_module, "solve_chunk", lambda *_: pytest.fail("something was computed"))
+    monkeypatch.setattr(scan_run, "solve_chunk", lambda *_: pytest.fail("something was computed"))
     with pytest.raises(error, match=message):
         EMBER.scan(progress=False, **given_)
 

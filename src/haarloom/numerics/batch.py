@@ -96,9 +96,15 @@ class TruncationBatch:
         values, right = _in_order(values, right)
         return values, right, right.conj() if symmetric else biorthogonal(right)
 
-    def leading(self) -> tuple[NDArray[Any], NDArray[Any]]:
-        """All eigenvalues and right vectors without the left ones."""
-        return _in_order(*np.linalg.eig(self.matrix))
+    def leading(self, count: int) -> tuple[NDArray[Any], NDArray[Any]]:
+        """The first ``count`` + 1 eigenvalues, and ``count`` right vectors."""
+        values, right = np.linalg.eig(self.matrix)
+        # ties at the end are settled among one more level
+        first = np.argsort(-np.abs(values), axis=1)[:, : count + 1]
+        values = np.take_along_axis(values, first, axis=1)
+        order = spectral_order(values)
+        columns = np.take_along_axis(first, order[:, :count], axis=1)
+        return np.take_along_axis(values, order, axis=1), np.take_along_axis(right, columns[:, None], axis=2)
 
 
 def _in_order(values: NDArray[Any], right: NDArray[Any]) -> tuple[NDArray[Any], NDArray[Any]]:

@@ -11,18 +11,19 @@ needs no eigen-solver at all.
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from functools import partial
 from itertools import pairwise
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from haarloom.numerics.batch import truncate_batch
 from haarloom.numerics.group_levels import group_radii, pencil_levels
 from haarloom.numerics.interpolation import chebyshev_decay, chebyshev_nodes, lagrange_matrix
 from haarloom.numerics.ordering import spectral_order
 from haarloom.numerics.plane import MANY_FAILURES, NODES, Plane
-from haarloom.numerics.plane_images import PlanePart, plane_parts, point_parts
+from haarloom.numerics.plane_images import PartJob, plane_parts, point_parts
+from haarloom.numerics.threads import in_parallel, split
 from haarloom.numerics.verdicts import verdict_codes
 
 __all__ = ["levels_from_frames"]
@@ -33,6 +34,9 @@ EXTRA = 6
 GAP = 0.9
 """Ratio of neighbouring |λ|, at every node, below which they belong to different groups."""
 
+LEAST_NODES = 8
+"""Fewest nodes for a thread."""
+
 SMOOTH = 1e-8
 """Interpolation error of a subspace that is aimed at: its square is lost in rounding."""
 
@@ -41,6 +45,10 @@ BEND = 1e-6
 
 SAMPLE = 4
 """Of so many points along each axis one is tried before a patch is evaluated in full."""
+
+
+Levels = tuple[NDArray[np.complex128], NDArray[np.float64], NDArray[np.int8]]
+"""Values, radii and verdicts."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -67,7 +75,7 @@ class _Frames:
 
 def levels_from_frames(
     plane: Plane,
-) -> tuple[NDArray[np.complex128], NDArray[np.float64], NDArray[np.int8]] | int | None:
+) -> Levels | int | None:
     """Values, radii and verdicts at every point.
 
     Where the subspaces bend too much to be interpolated, the axis across which to halve the plane;
@@ -90,29 +98,26 @@ def levels_from_frames(
     return found
 
 
-Levels = tuple[NDArray[np.complex128], NDArray[np.float64], NDArray[np.int8]]
-
-
 def _everywhere(plane: Plane, frames: _Frames) -> Levels:
     """Values, radii and verdicts at all points from the interpolated subspaces."""
     rows, columns = plane.shape
     values = np.empty((rows * columns, plane.levels), dtype=complex)
     radius = np.empty((rows * columns, plane.levels))
     verdicts = np.empty((rows * columns, plane.levels - 1), dtype=np.int8)
-    for part in plane_parts(plane, frames.vectors, _weights(plane, frames)):
-        values[part.points], radius[part.points], verdicts[part.points] = _solved(plane, frames, part)
+    jobs = plane_parts(plane, frames.vectors, _weights(plane, frames))
+    for points, found in in_parallel(partial(_solved, plane, frames), jobs):
+        values[points], radius[points], verdicts[points] = found
     shape = (rows, columns, -1)
     return values.reshape(shape), radius.reshape(shape), verdicts.reshape(rows, columns, plane.levels - 1)
 
 
 def _improved(plane: Plane, frames: _Frames, found: Levels) -> None:
-    """Points that miss the tolerance, once more with T applied to their subspaces."""
+    """Points that miss the tolerance, once more with corrected subspaces."""
     places = np.nonzero(~plane.accepts(found[0], found[1]))
-    weights = _weights(plane, frames)
-    for part in point_parts(plane, frames.vectors, weights, (places[0], places[1]), frames.groups):
-        better = _solved(plane, frames, part)
+    jobs = point_parts(plane, frames.vectors, _weights(plane, frames), (places[0], places[1]), frames.groups)
+    for points, better in in_parallel(partial(_solved, plane, frames), jobs):
         for array, new in zip(found, better, strict=True):
-            np.asarray(array)[places[0][part.points], places[1][part.points]] = new
+            np.asarray(array)[places[0][points], places[1][points]] = new
 
 
 def _weights(plane: Plane, frames: _Frames) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
@@ -138,19 +143,20 @@ def _nodes(axis: NDArray[np.float64], count: int) -> NDArray[np.float64]:
     return chebyshev_nodes(axis.min(), axis.max(), count)
 
 
-def _solved(
-    plane: Plane, frames: _Frames, part: PlanePart
-) -> tuple[NDArray[Any], NDArray[np.float64], NDArray[np.int8]]:
+def _solved(plane: Plane, frames: _Frames, job: PartJob) -> tuple[slice, Levels]:
+    part = job()
     groups = [
         pencil_levels(part.vectors[:, group], part.images[:, group], part.beyond[:, group], part.dual)
         for group in frames.groups
     ]
-    levels = np.concatenate([group.values for group in groups], axis=1)
-    radii = group_radii(groups, part.margins, frames.rest * np.abs(levels[:, -1]))
+    levels = np.concatenate([group.values for group in groups])
+    radii = group_radii(groups, part.margins, frames.rest * np.abs(levels[-1])).T
+    levels = np.ascontiguousarray(levels.T)
     order = spectral_order(levels)
     levels, radii = (np.take_along_axis(array, order, axis=1) for array in (levels, radii))
     leading, radius = levels[:, : plane.levels], radii[:, : plane.levels]
-    return leading, radius, verdict_codes(leading, radius, levels, part.real, part.hermitian)
+    verdicts = verdict_codes(leading, radius, levels, part.real, part.hermitian)
+    return part.points, (leading, radius, verdicts)
 
 
 def _node_count(plane: Plane, axis: int) -> int | None:
@@ -174,19 +180,30 @@ def _node_count(plane: Plane, axis: int) -> int | None:
 def _frames(plane: Plane, counts: tuple[int, int]) -> _Frames | None:
     nodes = tuple(_nodes(axis, count) for axis, count in zip(plane.axes, counts, strict=True))
     first, second = (grid.reshape(-1) for grid in np.meshgrid(*nodes, indexing="ij"))
-    batch = truncate_batch(plane.model, plane.cutoff, plane.values(first, second))
-    if not batch.mirrored:
+    parts = split(len(first), LEAST_NODES)
+    found = list(in_parallel(lambda part: _at_nodes(plane, first[part], second[part]), parts))
+    known = [part for part in found if part is not None]
+    if len(known) < len(found):
         return None
-    values, right = batch.leading()
+    values, right = (np.concatenate(part) for part in zip(*(part[:2] for part in known), strict=True))
+    real = all(part[2] for part in known)
     groups, rest = _groups(np.abs(values), plane.levels)
     if not groups:
         return None
-    rows = [_in_gauge(right[:, :, group], batch.real) for group in groups]
+    rows = [_in_gauge(right[:, :, group], real) for group in groups]
     if any(row is None for row in rows):
         return None
     vectors = np.concatenate([row for row in rows if row is not None], axis=1)
     vectors = np.ascontiguousarray(vectors).reshape(len(nodes[0]), len(nodes[1]), *vectors.shape[1:])
     return _Frames((nodes[0], nodes[1]), vectors, groups, rest)
+
+
+def _at_nodes(
+    plane: Plane, first: NDArray[np.float64], second: NDArray[np.float64]
+) -> tuple[NDArray[Any], NDArray[Any], bool] | None:
+    """Leading eigenvalues, right vectors, whether T is real; None where left vectors do not follow."""
+    batch = plane.batch(first, second)
+    return (*batch.leading(plane.levels + EXTRA), batch.real) if batch.mirrored else None
 
 
 def _groups(sizes: NDArray[np.float64], levels: int) -> tuple[tuple[slice, ...], float]:

@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["GroupNumbers", "Margins", "group_radii", "pencil_levels", "purge"]
+__all__ = ["GroupNumbers", "Margins", "group_radii", "pencil_levels"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -29,7 +28,7 @@ class GroupNumbers:
     Attributes
     ----------
     values
-        Shape (M, s).
+        Shape (s, M).
     right, left
         ‖V‖ and ‖Y‖ of its bases, shape (M,).
     upwards, residual
@@ -52,136 +51,110 @@ def pencil_levels(
     beyond: NDArray[Any],
     dual: tuple[NDArray[Any] | None, NDArray[np.int64]],
 ) -> GroupNumbers:
-    """Levels of (V ΦJ T Vᵀ, V ΦJ Vᵀ) for rows V.
+    """Levels of (Vᵀ ΦJ T V, Vᵀ ΦJ V) at M points.
 
     Parameters
     ----------
     vectors, images, beyond
-        V, T V inside and beyond the basis, shapes (M, s, n), (M, s, n), (M, s, ·).
+        V, T V inside and beyond the basis, shapes (n, s, M), (n, s, M), (·, s, M).
     dual
-        (Φ, J); Φ is None where it is 1.
+        (Φ, J); Φ broadcasts to (n, s, M), or is None where it is 1.
     """
     factors, order = dual
-    partner = np.take(vectors, order, axis=2)
+    partner = np.take(vectors, order, axis=0)
     if factors is not None:
-        partner *= factors
-    if vectors.shape[1] == 1:
-        return _single(vectors[:, 0], images[:, 0], beyond[:, 0], partner[:, 0])
-    overlap = np.einsum("pan,pbn->pab", partner, vectors)
-    element = np.einsum("pan,pbn->pab", partner, images)
+        partner = partner * factors
+    overlap, element = _products(partner, vectors), _products(partner, images)
     inverse = _inverse(overlap)
-    block = inverse @ element
-    values = _block_values(block)
-    residual = images - np.swapaxes(block, 1, 2) @ vectors
+    block = np.einsum("acp,cdp->adp", inverse, element)
+    if len(block) == 1:
+        residual = images - block * vectors
+    else:
+        residual = images - np.einsum("cap,ncp->nap", block, vectors)
     right = _size(vectors)
-    left = right * _size(inverse)
-    departure = np.sqrt(np.maximum(_size(block) ** 2 - (np.abs(values) ** 2).sum(axis=1), 0.0))
-    return GroupNumbers(values, right, left, _size(beyond), _size(residual), departure)
-
-
-def purge(
-    vectors: NDArray[Any], dual: tuple[NDArray[Any] | None, NDArray[np.int64]], groups: Sequence[slice]
-) -> NDArray[Any]:
-    """Take out of each group what it holds of the groups before it, by the form Vᵀ ΦJ V."""
-    factors, order = dual
-    found = vectors.copy()
-    for place, group in enumerate(groups):
-        for before in groups[:place]:
-            basis = found[:, before]
-            partner = np.take(basis, order, axis=2) * (1.0 if factors is None else factors)
-            overlap = np.einsum("pan,pbn->pab", partner, basis)
-            share = _inverse(overlap) @ np.einsum("pan,pbn->pab", partner, found[:, group])
-            found[:, group] -= np.swapaxes(share, 1, 2) @ basis
-    return found
-
-
-def _single(
-    vector: NDArray[Any], image: NDArray[Any], beyond: NDArray[Any], partner: NDArray[Any]
-) -> GroupNumbers:
-    """The two-sided Rayleigh quotient of one level."""
-    overlap = np.einsum("pn,pn->p", partner, vector)
-    value = np.einsum("pn,pn->p", partner, image) / overlap
-    residual = image - value[:, None] * vector
-    right = _size(vector)
-    left = right / np.abs(overlap)
-    none = np.zeros(len(value))
-    return GroupNumbers(value.astype(complex)[:, None], right, left, _size(beyond), _size(residual), none)
-
-
-def _size(array: NDArray[Any]) -> NDArray[np.float64]:
-    flat = array.reshape(len(array), -1)
-    return np.asarray(
-        np.sqrt(np.einsum("pi,pi->p", flat, flat.conj() if np.iscomplexobj(flat) else flat).real)
+    values = _block_values(block)
+    departure = np.maximum(_size(block) ** 2 - (np.abs(values) ** 2).sum(axis=0), 0.0)
+    return GroupNumbers(
+        values, right, right * _size(inverse), _size(beyond), _size(residual), np.sqrt(departure)
     )
 
 
+def _products(left: NDArray[Any], right: NDArray[Any]) -> NDArray[Any]:
+    """All products of two bases, (n, s, M) each, summed over n: shape (s, s, M)."""
+    return np.asarray(np.einsum("nap,ncp->acp", left, right))
+
+
+def _size(array: NDArray[Any]) -> NDArray[np.float64]:
+    """Frobenius norms over the first two axes, shape (M,)."""
+    partner = array.conj() if np.iscomplexobj(array) else array
+    return np.asarray(np.sqrt(np.einsum("ijp,ijp->p", array, partner).real))
+
+
 def _inverse(matrix: NDArray[Any]) -> NDArray[Any]:
+    """Inverses of s × s matrices, shape (s, s, M)."""
     with np.errstate(divide="ignore", invalid="ignore"):
-        if matrix.shape[1] == 1:
+        if len(matrix) == 1:
             return np.asarray(1 / matrix)
-        if matrix.shape[1] > 2:
-            return np.linalg.inv(matrix)
-        a, b, c, d = matrix[:, 0, 0], matrix[:, 0, 1], matrix[:, 1, 0], matrix[:, 1, 1]
-        flat = np.stack([d, -b, -c, a], axis=1) / (a * d - b * c)[:, None]
-    return np.asarray(flat.reshape(-1, 2, 2))
+        if len(matrix) > 2:
+            return np.moveaxis(np.linalg.inv(np.moveaxis(matrix, 2, 0)), 0, 2)
+        (a, b), (c, d) = matrix
+        return np.asarray(np.array([[d, -b], [-c, a]]) / (a * d - b * c))
 
 
 def _block_values(block: NDArray[Any]) -> NDArray[np.complex128]:
-    """Eigenvalues of s × s blocks, shape (M, s)."""
-    if block.shape[1] == 1:
-        return block[:, 0].astype(complex)
-    if block.shape[1] > 2:
-        finite = np.isfinite(block).all(axis=(1, 2))
-        return np.linalg.eigvals(np.where(finite[:, None, None], block, 0.0)).astype(complex)
-    mean = (block[:, 0, 0] + block[:, 1, 1]) / 2
-    half = (block[:, 0, 0] - block[:, 1, 1]) / 2
-    square = half * half + block[:, 0, 1] * block[:, 1, 0]
-    split = np.sqrt(square.astype(complex))
-    return np.stack([mean + split, mean - split], axis=1)
+    """Eigenvalues of s × s blocks (s, s, M): shape (s, M)."""
+    if len(block) == 1:
+        return block[0].astype(complex)
+    if len(block) > 2:
+        finite = np.isfinite(block).all(axis=(0, 1))
+        flat = np.moveaxis(np.where(finite, block, 0.0), 2, 0)
+        return np.linalg.eigvals(flat).astype(complex).T
+    mean = (block[0, 0] + block[1, 1]) / 2
+    half = (block[0, 0] - block[1, 1]) / 2
+    split = np.sqrt((half * half + block[0, 1] * block[1, 0]).astype(complex))
+    return np.stack([mean + split, mean - split])
 
 
 def group_radii(
     groups: list[GroupNumbers], margins: Margins, rest: NDArray[np.float64]
 ) -> NDArray[np.float64]:
-    """Radius around each level that holds one of the untruncated T, shape (M, levels); else infinite.
+    """Radius around each level that holds one of the untruncated T, shape (levels, M); else infinite.
 
     The inequality of :mod:`haarloom.numerics.bounds` with one term for each group, solved in closed
     form: a group of s levels has a resolvent of norm at most Σ_k Nᵏ/(δ_1 ⋯ δ_{k+1}), k < s, with δ the
     distances to its levels, nearest first; and a residual couples it to the levels left out like B and
     C couple it to what was cut off.
     """
-    centres = np.concatenate([group.values for group in groups], axis=1)
+    centres = np.concatenate([group.values for group in groups])
     size = np.abs(centres)
-    owner = np.repeat(np.arange(len(groups)), [group.values.shape[1] for group in groups])
-    apart = np.abs(centres[:, :, None] - centres[:, None, :])
+    owner = np.repeat(np.arange(len(groups)), [len(group.values) for group in groups])
+    apart = np.abs(centres[:, None] - centres[None, :])
     with np.errstate(all="ignore"):
         # a tenth of the distance to D and to the rest is given away: it makes room for the radius itself
-        room = (size - margins.beyond[:, None]) * 0.9
-        spare = (size - rest[:, None]) * 0.9
+        room = (size - margins.beyond) * 0.9
+        spare = (size - rest) * 0.9
         strengths = [_strength(group, margins, room, spare) for group in groups]
         crowd = _crowd(groups, strengths, apart, owner) + _left_over(groups, margins, room, spare)
         radius = np.full(centres.shape, np.inf)
         for level, number in enumerate(owner):
             group = groups[number]
-            load = strengths[number][:, level] / (1 - crowd[:, level])
-            mine = np.flatnonzero(owner == number)
-            found = _reach(load, group.departure, apart[:, level, mine])
-            others = np.where(owner == number, np.inf, apart[:, level]).min(axis=1)
-            holds = (crowd[:, level] < 1) & (found < 0.1 * np.minimum(others, size[:, level]))
-            holds &= (room[:, level] > 0) & (spare[:, level] > 0)
-            radius[:, level] = np.where(holds, 1.05 * found, np.inf)
+            load = strengths[number][level] / (1 - crowd[level])
+            found = _reach(load, group.departure, apart[level, owner == number])
+            others = apart[level, owner != number].min(axis=0, initial=np.inf)
+            holds = (crowd[level] < 1) & (found < 0.1 * np.minimum(others, size[level]))
+            holds &= (room[level] > 0) & (spare[level] > 0)
+            radius[level] = np.where(holds, 1.05 * found, np.inf)
     return radius
 
 
 def _strength(
     group: GroupNumbers, margins: Margins, room: NDArray[np.float64], spare: NDArray[np.float64]
 ) -> NDArray[np.float64]:
-    """√(c² g + ‖V‖² η + r²/…) √(b² g + …) of a group near every level, shape (M, levels)."""
-    up = (group.upwards + margins.tail * group.right)[:, None]
-    ratio = (group.left / group.right)[:, None]
-    first = up**2 / room + (group.right**2 * margins.noise)[:, None] + (group.residual**2)[:, None] / spare
+    """√(c² g + ‖V‖² η + r²/…) √(b² g + …) of a group near every level, shape (levels, M)."""
+    up = group.upwards + margins.tail * group.right
+    first = up**2 / room + group.right**2 * margins.noise + group.residual**2 / spare
     # left vectors are ΦJ times right ones and the inverse overlap: the same norms, times ‖Y‖/‖V‖
-    return np.asarray(first * ratio)
+    return np.asarray(first * (group.left / group.right))
 
 
 def _reach(
@@ -192,19 +165,18 @@ def _reach(
     Parameters
     ----------
     apart
-        Distances to all s levels of the group, its own 0 among them, shape (M, s).
+        Distances to all s levels of the group, its own 0 among them, shape (s, M).
     """
-    order = apart.shape[1]
-    others = np.sort(apart, axis=1)[:, 1:]
-    # on a circle that stays on this side of the middle, each other level is at least half as far as now
-    factors = np.cumprod(2 * departure[:, None] / others, axis=1)
-    alone = load * (1 + factors.sum(axis=1))
+    order = len(apart)
     if order == 1:
-        return np.asarray(alone)
+        return load
+    others = np.sort(apart, axis=0)[1:]
+    # on a circle that stays on this side of the middle, each other level is at least half as far as now
+    alone = load * (1 + np.cumprod(2 * departure / others, axis=0).sum(axis=0))
     # a circle around all of them: each of the s terms is at most 1/s at the largest of these distances
     terms = [(order * load * departure**k) ** (1 / (k + 1)) for k in range(order)]
-    together = others[:, -1] + np.max(terms, axis=0)
-    return np.where(alone < others[:, 0] / 2, alone, together)
+    together = others[-1] + np.max(terms, axis=0)
+    return np.where(alone < others[0] / 2, alone, together)
 
 
 def _resolvent(
@@ -212,7 +184,7 @@ def _resolvent(
 ) -> NDArray[np.float64]:
     total = term = 1 / distance
     for _ in range(1, order):
-        term = term * departure[:, None] / distance
+        term = term * departure / distance
         total = total + term
     return np.asarray(total)
 
@@ -223,13 +195,13 @@ def _crowd(
     apart: NDArray[np.float64],
     owner: NDArray[np.int64],
 ) -> NDArray[np.float64]:
-    """What all other groups add to the left side near each level, shape (M, levels)."""
-    total = np.zeros(apart.shape[:2])
+    """What all other groups add to the left side near each level, shape (levels, M)."""
+    total = np.zeros(apart.shape[1:])
     for number, group in enumerate(groups):
-        outside = np.flatnonzero(owner != number)
-        nearest = 0.9 * apart[:, outside][:, :, owner == number].min(axis=2)
-        order = group.values.shape[1]
-        total[:, outside] += strengths[number][:, outside] * _resolvent(nearest, group.departure, order)
+        outside = owner != number
+        nearest = 0.9 * apart[np.ix_(outside, owner == number)].min(axis=1)
+        resolvent = _resolvent(nearest, group.departure, len(group.values))
+        total[outside] += strengths[number][outside] * resolvent
     return total
 
 
@@ -238,5 +210,5 @@ def _left_over(
 ) -> NDArray[np.float64]:
     """The levels left out, as one block with the norms of the whole rim."""
     projector = np.sum([group.left * group.right for group in groups], axis=0) + 1.0
-    coupling = (margins.rim**2)[:, None] / room + margins.noise[:, None]
-    return np.asarray(coupling * projector[:, None] / spare)
+    coupling = margins.rim**2 / room + margins.noise
+    return np.asarray(coupling * projector / spare)

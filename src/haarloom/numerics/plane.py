@@ -11,12 +11,13 @@ from numpy.typing import NDArray
 
 from haarloom.numerics.batch import TruncationBatch, batch_errors, complete_levels, truncate_batch
 from haarloom.numerics.bounds import mass_errors
+from haarloom.numerics.threads import in_parallel
 from haarloom.numerics.verdicts import verdict_codes
 
 if TYPE_CHECKING:
     from haarloom.ring.model import RingModel
 
-__all__ = ["Plane", "PlaneLevels", "dense_points", "fitted", "solve_plane", "suffices"]
+__all__ = ["Plane", "PlaneLevels", "dense_points", "solve_plane"]
 
 NODES = 16
 """Most nodes along an axis from which subspaces are interpolated."""
@@ -89,8 +90,18 @@ class Plane:
 
     def accepts(self, values: NDArray[Any], radius: NDArray[np.float64]) -> NDArray[np.bool_]:
         """Whether every mass of a point is as accurate as wanted; last axis the level."""
-        masses = np.abs(np.log(values[..., 1:] / values[..., :1]))
-        return np.asarray((mass_errors(values, radius) <= self.tolerance * masses).all(axis=-1))
+        errors = mass_errors(values, radius)
+        # |Re m| ≤ |m| decides almost everywhere, without a complex logarithm
+        sizes = np.abs(values)
+        with np.errstate(divide="ignore", invalid="ignore"):
+            decays = np.abs(np.log(sizes[..., 1:] / sizes[..., :1]))
+        accepted = np.asarray((errors <= self.tolerance * decays).all(axis=-1))
+        open_ = ~accepted
+        if open_.any():
+            with np.errstate(divide="ignore", invalid="ignore"):
+                masses = np.abs(np.log(values[open_][:, 1:] / values[open_][:, :1]))
+            accepted[open_] = (errors[open_] <= self.tolerance * masses).all(axis=-1)
+        return accepted
 
 
 @dataclass(frozen=True, eq=False)
@@ -123,6 +134,7 @@ def solve_plane(plane: Plane) -> PlaneLevels:
     solved densely.
     """
     from haarloom.numerics.frames import levels_from_frames
+    from haarloom.numerics.plane_cutoff import fitted
 
     rows, columns = plane.shape
     if rows * columns <= FEW_POINTS:
@@ -143,32 +155,7 @@ def solve_plane(plane: Plane) -> PlaneLevels:
                 values[places], radius[places], verdicts[places] = found
             return PlaneLevels(values, radius, verdicts, *_marks(plane, bad))
     halves = plane.halves(warm if isinstance(warm, int) else None)
-    return _joined(plane, [solve_plane(fitted(half, half.cutoff)) for half in halves])
-
-
-def fitted(plane: Plane, largest: int) -> Plane:
-    """The plane on the smallest basis, up to a largest one, that suffices at nine of its points.
-
-    The truncation error there is a quarter of the tolerance at most.
-    """
-    rows, columns = (np.unique(axis[[0, len(axis) // 2, -1]]) for axis in plane.axes)
-    first, second = (grid.reshape(-1) for grid in np.meshgrid(rows, columns, indexing="ij"))
-    cutoff = largest
-    while cutoff > 1 and suffices(replace(plane, cutoff=cutoff - 1), first, second):
-        cutoff -= 1
-    return replace(plane, cutoff=cutoff)
-
-
-def suffices(plane: Plane, first: NDArray[np.float64], second: NDArray[np.float64]) -> bool:
-    """Whether the truncation error is a quarter of the tolerance at most, at a list of points."""
-    if plane.model.group.count_irreps(plane.cutoff) <= plane.levels:
-        return False
-    batch = plane.batch(first, second)
-    values, right, left = batch.solved()
-    quiet = replace(batch, noise=0.0 * batch.noise)
-    radius = batch_errors(quiet, complete_levels(batch, values, right, left), plane.levels)
-    strict = replace(plane, tolerance=plane.tolerance / 4)
-    return bool(strict.accepts(values[:, : plane.levels].astype(complex), radius).all())
+    return _joined(plane, [solve_plane(fitted(half)) for half in halves])
 
 
 def _joined(plane: Plane, parts: list[PlaneLevels]) -> PlaneLevels:
@@ -187,14 +174,16 @@ def dense_points(
     plane: Plane, first: NDArray[np.float64], second: NDArray[np.float64]
 ) -> tuple[NDArray[Any], NDArray[np.float64], NDArray[np.int8]]:
     """Values, radii and verdicts at a list of points, by LAPACK."""
-    found = []
-    for part in plane.stacks(len(first)):
+
+    def solved(part: slice) -> tuple[NDArray[Any], NDArray[np.float64], NDArray[np.int8]]:
         batch = plane.batch(first[part], second[part])
         values, right, left = batch.solved()
         radius = batch_errors(batch, complete_levels(batch, values, right, left), plane.levels)
         leading = values[:, : plane.levels].astype(complex)
         _look_again(plane, first[part], second[part], leading, radius)
-        found.append((leading, radius, verdict_codes(leading, radius, values, batch.real, batch.hermitian)))
+        return leading, radius, verdict_codes(leading, radius, values, batch.real, batch.hermitian)
+
+    found = in_parallel(solved, plane.stacks(len(first)))
     values, radius, verdicts = (np.concatenate(part) for part in zip(*found, strict=True))
     return values, radius, verdicts
 

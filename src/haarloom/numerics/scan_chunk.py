@@ -11,18 +11,15 @@ from numpy.typing import NDArray
 
 from haarloom.exceptions import HaarloomError
 from haarloom.numerics.bounds import mass_errors
-from haarloom.numerics.cutoff import closing_cutoff
 from haarloom.numerics.ordering import masses_from
-from haarloom.numerics.plane import Plane, PlaneLevels, dense_points, solve_plane, suffices
+from haarloom.numerics.plane import Plane, PlaneLevels, dense_points, solve_plane
+from haarloom.numerics.plane_cutoff import sufficient
 from haarloom.numerics.scan_grid import Chunk, ScanGrid
 from haarloom.numerics.spectrum import spectrum
 from haarloom.numerics.threads import single_threaded
 from haarloom.numerics.verdicts import UNDECIDED, VERDICTS
 
 __all__ = ["ChunkResult", "solve_chunk"]
-
-LARGEST_PLANE = 250
-"""Most irreps in the basis of a plane; beyond, every point is solved by itself."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -35,10 +32,12 @@ class ChunkResult:
         Shape (R, C, L − 1); verdicts as positions in ``VERDICTS``.
     ground, cutoff
         λ_0 and K, shape (R, C).
+    together
+        Whether points were solved together, from warm starts or in stacks; else each by itself.
     note
         Why some points have no result; empty where all have.
     seconds
-        Processor time it took: what it costs does not depend on who else is at work.
+        How long it took.
     """
 
     chunk: Chunk
@@ -47,6 +46,7 @@ class ChunkResult:
     verdicts: NDArray[np.int8]
     ground: NDArray[np.complex128]
     cutoff: NDArray[np.int32]
+    together: bool = True
     note: str = ""
     seconds: float = 0.0
 
@@ -54,9 +54,9 @@ class ChunkResult:
 @single_threaded
 def solve_chunk(grid: ScanGrid, chunk: Chunk) -> ChunkResult:
     """Masses at all points of a chunk; points whose bound does not close come back without numbers."""
-    start = time.process_time()
+    start = time.perf_counter()
     result = _solved(grid, chunk)
-    return replace(result, seconds=time.process_time() - start)
+    return replace(result, seconds=time.perf_counter() - start)
 
 
 def _solved(grid: ScanGrid, chunk: Chunk) -> ChunkResult:
@@ -64,14 +64,13 @@ def _solved(grid: ScanGrid, chunk: Chunk) -> ChunkResult:
     if not grid.model.link.diagonal:
         return _one_by_one(grid, chunk, plane)
     try:
-        cutoff = _cutoff(plane)
-        if grid.model.group.count_irreps(cutoff) > LARGEST_PLANE:
+        fitting = sufficient(plane)
+        if fitting is None:
             return _one_by_one(grid, chunk, plane)
-        plane = replace(plane, cutoff=cutoff)
-        found = solve_plane(plane)
+        found = solve_plane(fitting)
     except HaarloomError:
         return _one_by_one(grid, chunk, plane)
-    _raise_cutoffs(plane, found)
+    _raise_cutoffs(fitting, found)
     return _packed(chunk, found)
 
 
@@ -96,20 +95,6 @@ def _plane(grid: ScanGrid, chunk: Chunk) -> Plane:
     names = (row, grid.names[columns])
     axes = (first, grid.axes[columns][slice(*chunk.columns)])
     return Plane(grid.model, 0, names, axes, fixed, grid.levels, grid.tolerance)
-
-
-def _cutoff(plane: Plane) -> int:
-    """Smallest K that suffices at the corners and in the middle of the plane."""
-    rows, columns = (axis[[0, len(axis) // 2, -1]] for axis in plane.axes)
-    first, second = rows[[0, 0, 1, 2, 2]], columns[[0, 2, 1, 0, 2]]
-    values = plane.values(first, second)
-    places = [{name: array[min(i, len(array) - 1)] for name, array in values.items()} for i in range(5)]
-    cutoff = min(closing_cutoff(plane.model, plane.levels, place) for place in places)
-    while plane.model.group.count_irreps(cutoff) <= LARGEST_PLANE:
-        if suffices(replace(plane, cutoff=cutoff), first, second):
-            return cutoff
-        cutoff += 1
-    return cutoff
 
 
 def _raise_cutoffs(plane: Plane, found: PlaneLevels) -> None:
@@ -164,7 +149,7 @@ def _one_by_one(grid: ScanGrid, chunk: Chunk, plane: Plane) -> ChunkResult:
             result.verdicts[row, column] = [VERDICTS.index(word) for word in found.verdicts]
             result.ground[row, column] = found.eigenvalues[0]
             result.cutoff[row, column] = found.cutoff
-    return replace(result, note=note)
+    return replace(result, note=note, together=False)
 
 
 def _named(plane: Plane, first: float, second: float) -> dict[str, Any]:
