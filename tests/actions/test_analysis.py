@@ -114,7 +114,7 @@ def test_faces_are_complete_small_and_escaped() -> None:
 def test_missing_values_and_unknown_properties() -> None:
     with pytest.raises(MissingValueError, match="z"):
         analyse_site(static_fermions(G, "z"))
-    with pytest.raises(KeyError, match="known are"):
+    with pytest.raises(KeyError, match="is no statement; ask for one of"):
         analyse_site(static_fermions(G, "z"), z=0.1)["beautiful"]
 
 

@@ -13,6 +13,7 @@ from haarloom.actions.windings import shortest_phases
 from haarloom.algebra.group import SU
 from haarloom.exceptions import MissingValueError, ParameterError
 from haarloom.torus.characters import characters
+from haarloom.torus.determinant_forms import WindingGaussian
 
 
 def test_coefficients_are_exponentials_of_casimirs() -> None:
@@ -106,5 +107,33 @@ def test_bad_values_at_evaluation() -> None:
 
 @pytest.mark.parametrize("plaquettes", [0, -2, 1.5, "2", True])
 def test_plaquettes_are_whole_and_positive(plaquettes: object) -> None:
-    with pytest.raises(ParameterError, match=r"plaquettes = .* integer ≥ 1"):
+    with pytest.raises(ParameterError, match=r"plaquettes .* integer ≥ 1.*N_t counts"):
         heat_kernel(SU(2), "t", plaquettes)
+
+
+@pytest.mark.parametrize(
+    ("n", "tau", "cutoff"), [(2, 90.0, 4), (3, 21.0, 4), (4, 8.4, 5), (5, 4.2, 4), (6, 2.4, 4)]
+)
+def test_strong_coupling_has_no_cancellation(
+    n: int, tau: float, cutoff: int, rng: np.random.Generator
+) -> None:
+    """Where windings would cancel to nine digits: all digits, coinciding eigenvalues included."""
+    G = SU(n)
+    phases = rng.uniform(-np.pi, np.pi, (6, n))
+    phases[1], phases[2, 1], phases[3] = 0.0, phases[2, 0] + 1e-6, 0.4
+    phases[:, -1] = -phases[:, :-1].sum(axis=1)
+    irreps = G.irreps(cutoff)
+    weights = np.array([r.dimension * np.exp(-tau * float(r.casimir(2))) for r in irreps])
+    expected = (characters(irreps, phases) @ weights).real
+    found = heat_kernel(G, "t").plaquette_at(phases, {"t": tau})
+    assert np.abs(found - expected).max() < 1e-12
+
+
+@pytest.mark.parametrize(("n", "tau"), [(7, 1.5), (8, 1.0)])
+def test_both_sums_meet_where_many_colours_change_over(n: int, tau: float, rng: np.random.Generator) -> None:
+    """The sum over characters against the sum over windings, unrolled (P. Menotti, E. Onofri 1981)."""
+    angles = rng.uniform(-np.pi, np.pi, (5, n - 1))
+    found = heat_kernel(SU(n), "t").plaquette_at(angles, {"t": tau})
+    other = WindingGaussian(SU(n), tau).at(angles)
+    assert found is not None
+    assert np.allclose(other * (found[0] / other[0]), found, rtol=1e-5)

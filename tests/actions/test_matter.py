@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from fractions import Fraction
 from typing import Any
 
@@ -19,10 +20,16 @@ from haarloom.actions import (
     static_fermions,
     static_species,
 )
-from haarloom.actions.fugacity_table import fundamental_monomials, power_table
+from haarloom.actions.fugacity_table import (
+    fundamental_monomials,
+    general_linear_dimension,
+    power_table,
+    transposed_dimension,
+)
 from haarloom.algebra.group import SU
 from haarloom.exceptions import ConvergenceError, GroupError, MissingValueError, ParameterError, SizeError
 from haarloom.torus.characters import characters
+from haarloom.torus.quadrature import haar_grid
 from haarloom.torus.transform import character_coefficients
 
 Z, Y, H = sympy.symbols("z y h")
@@ -218,15 +225,19 @@ def test_species_split_by_isospin() -> None:
         (lambda: static_fermions(SU(3), mass=1), ParameterError, "temperature is missing"),
         (lambda: static_fermions(SU(3), mass=1, kappa=0.1, n_t=4), ParameterError, "not both"),
         (lambda: static_fermions(SU(3), kappa=0.1), ParameterError, "n_t is missing"),
-        (lambda: static_fermions(SU(3), mass=1, temperature=1, n_t=4), ParameterError, "n_t goes with kappa"),
+        (
+            lambda: static_fermions(SU(3), mass=1, temperature=1, n_t=4),
+            ParameterError,
+            "it goes with kappa: leave it out",
+        ),
         (lambda: static_fermions(SU(3), mass=1, temperature=-1), ParameterError, "temperature = -1"),
         (lambda: static_fermions(SU(3), kappa=-1, n_t=2), ParameterError, "kappa = -1"),
         (lambda: static_fermions(SU(3), charge=1), ParameterError, "charge is no input"),
-        (lambda: static_fermions(SU(3), "z", copies=0), ParameterError, "copies = 0"),
-        (lambda: static_fermions(SU(3), "z", copies=1.5), ParameterError, "copies = 1.5"),
+        (lambda: static_fermions(SU(3), "z", copies=0), ParameterError, "copies 0 given.*spin states"),
+        (lambda: static_fermions(SU(3), "z", copies=1.5), ParameterError, "copies 1.5 given"),
         (lambda: static_bosons(SU(3), 1), ParameterError, r"z = 1 .*\|z\| < 1"),
         (lambda: static_bosons(SU(3), mass=1, mu=2, temperature=1), ParameterError, "z = 2.71828"),
-        (lambda: static_species(SU(3), [], "T"), ParameterError, "list of Species"),
+        (lambda: static_species(SU(3), [], "T"), ParameterError, "give a list such as"),
         (lambda: static_species(SU(3), [Species(1, statistics="anyons")], "T"), ParameterError, "anyons"),  # type: ignore[arg-type]
         (lambda: loop_field(SU(3), {}), ParameterError, "table"),
         (lambda: loop_field(SU(3), {"3": "h", (1, 0): "g"}), ParameterError, "twice"),
@@ -267,3 +278,38 @@ def test_density_is_the_determinant_of_the_eigenvalues(rng: np.random.Generator)
     assert np.allclose(found, expected, rtol=1e-13)
     loop = characters([G.fundamental], angles)[:, 0]
     assert np.allclose(loop_field(G, {"4": "h"}).density_at(angles, {"h": 0.4}), np.exp(0.4 * loop))
+
+
+@pytest.mark.parametrize("make", [static_fermions, static_bosons])
+def test_absurdly_many_copies_are_refused(make: Any) -> None:
+    with pytest.raises(SizeError, match=r"copies 1,000,000 given; at most 100 .* take fewer"):
+        make(SU(3), "z", copies=10**6)
+    assert make(SU(3), "z", copies=100).copies == 100
+
+
+def test_too_long_a_polynomial_is_refused_and_numbers_are_not() -> None:
+    site = static_fermions(SU(3), "z", "y", copies=100)
+    with pytest.raises(SizeError, match=r"30,197 terms, more than 10,000.*ask for numbers"):
+        site.coefficient(SU(3).adjoint)
+    w, error = site.coefficients_at([SU(3).adjoint], {"z": 0.02, "y": 0.01})
+    angles, weights = haar_grid(SU(3), 60)
+    density = site.density_at(angles, {"z": 0.02, "y": 0.01})
+    expected = np.sum(weights * density * characters([SU(3).adjoint], angles)[:, 0].conj())
+    assert abs(w[0] - expected) <= error[0] + 1e-11 * abs(expected)
+
+
+@given(st.lists(st.integers(0, 6), min_size=3, max_size=3), st.integers(1, 7))
+def test_dimensions_of_gl_n_by_weyls_formula(steps: list[int], n: int) -> None:
+    """∏_{i<j} (λ_i − λ_j + j − i)/(j − i) over all n rows (Weyl), and the same for the transposed diagram."""
+    rows = tuple(sum(steps[i:]) for i in range(3))
+    transposed = tuple(sum(row > column for row in rows) for column in range(rows[0]))
+
+    def weyl(diagram: tuple[int, ...]) -> Fraction:
+        if any(diagram[n:]):
+            return Fraction(0)
+        full = [*diagram[:n], *[0] * (n - len(diagram))]
+        pairs = [(i, j) for i in range(n) for j in range(i + 1, n)]
+        return math.prod((Fraction(full[i] - full[j] + j - i, j - i) for i, j in pairs), start=Fraction(1))
+
+    assert general_linear_dimension(rows, n) == weyl(rows)
+    assert transposed_dimension(rows, n) == weyl(transposed)

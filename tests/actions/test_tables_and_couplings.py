@@ -206,3 +206,25 @@ def test_foreign_groups_and_types_do_not_multiply() -> None:
 def test_an_exponential_too_strong_for_its_orders_says_so() -> None:
     with pytest.raises(SizeError, match="lam = 9"):
         loop_coupling(SU(3), "lam", "exponential").kernel_at(SU(3).irreps(1), {"lam": 9.0})
+
+
+@pytest.mark.parametrize("name", ["resummed", "exponential", "pairs"])
+def test_written_kernels_are_the_sums_over_their_elements(name: str, rng: np.random.Generator) -> None:
+    """K(P, P′) = Σ_rs k_rs χ_r(P) χ_s(P′)*, the closed form against the elements."""
+    G = SU(3)
+    table = {("1", "1"): 1, ("3", "6bar"): "lam", ("1", "8"): "2*lam*I"}
+    link = bilinear_coupling(G, table) if name == "pairs" else loop_coupling(G, "lam", name)  # type: ignore[arg-type]
+    first, second = rng.uniform(-np.pi, np.pi, (2, 4, 3))
+    for phases in (first, second):
+        phases[:, -1] = -phases[:, :-1].sum(axis=1)
+    irreps = G.irreps(10 if name == "exponential" else 2)
+    kernel, _ = link.kernel_at(irreps, {"lam": 0.05})
+    expected = characters(irreps, first) @ kernel @ characters(irreps, second).conj().T
+    found = link.kernel_density_at(first[:, None], second[None], {"lam": 0.05})
+    assert np.allclose(found, expected, rtol=0, atol=1e-9)
+
+
+def test_no_closed_kernel_is_claimed_for_a_gauge_action() -> None:
+    assert wilson(SU(3), "beta").kernel_density_at(np.zeros((1, 3)), np.zeros((1, 3)), {"beta": 1.0}) is None
+    assert wilson(SU(3), "beta").kernel_reach is None
+    assert link_from_coefficients(SU(3), {"1": 1, "8": "k"}).kernel_reach == 2

@@ -7,8 +7,8 @@ Sections: map, weak, apply, solve, scan, dask; all of them when none is named. R
 
 The plain script is what one writes by hand with NumPy: T put together for many points at once on one fixed
 basis that is large enough everywhere, then ``numpy.linalg.eigvals`` on the stack. It knows its one model by
-heart. It is timed on part of the points and scaled up, on one thread and on all cores; ratios are to the
-faster of the two.
+heart. It is timed on part of the points and scaled up, as it is, and with its stacks handed to threads on all
+cores.
 """
 
 from __future__ import annotations
@@ -149,14 +149,14 @@ def bench_map() -> tuple[list[Row], dict[str, Any]]:
     one = plain_seconds(cutoff, sample_t, sample_z, 1) * scale
     plain_cpu = (cpu_seconds() - before) * scale
     many = plain_seconds(cutoff, sample_t, sample_z, CORES) * scale
-    plain = min(one, many)
     apart = multiset_distance(masses[rows].reshape(-1, 3), plain_masses(cutoff, sample_t, sample_z))
     missed = float((relative > TOLERANCE).mean())
     found = {
         "seconds": ours,
-        "plain_seconds_one_thread": one,
-        "plain_seconds_all_cores": many,
-        "ratio": plain / ours,
+        "plain_seconds": one,
+        "plain_seconds_on_threads": many,
+        "ratio": one / ours,
+        "ratio_to_threads": many / ours,
         "cpu_seconds": ours_cpu,
         "plain_cpu_seconds": plain_cpu,
         "cpu_ratio": plain_cpu / ours_cpu,
@@ -169,16 +169,13 @@ def bench_map() -> tuple[list[Row], dict[str, Any]]:
         "cutoffs": [int(table["cutoff"].min()), int(table["cutoff"].max())],
     }
     name = f"{points} × {points} map in (z, t), 3 masses"
+    script = f"plain script, {found['plain_irreps']} irreps ({len(sample_t):,} points, scaled)"
     return [
-        (name, f"{ours:.1f} s", f"error ≤ {relative.max():.1e}", f"{plain / ours:.1f}"),
+        (name, f"{ours:.2f} s", f"error ≤ {relative.max():.1e}", "1"),
+        (script, f"{one:.1f} s", "aim 10 times slower", f"{one / ours:.1f}"),
+        (f"its stacks handed to {CORES} threads by hand", f"{many:.1f} s", "", f"{many / ours:.1f}"),
         (
-            f"plain script, {found['plain_irreps']} irreps ({len(sample_t):,} points, scaled)",
-            f"{plain:.1f} s",
-            f"1 thread {one:.0f} s",
-            "1",
-        ),
-        (
-            "the same in seconds of all processors together",
+            "the first two in seconds of all processors together",
             f"{ours_cpu:.1f} s",
             f"plain {plain_cpu:.1f} s",
             f"{plain_cpu / ours_cpu:.1f}",

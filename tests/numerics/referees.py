@@ -7,7 +7,7 @@ by inverse iteration in mpmath until their residual vanishes.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from itertools import combinations
 from typing import Any
 
@@ -170,3 +170,57 @@ def distance(one: Sequence[Any], other: Sequence[Any]) -> float:
     cost = np.array([[float(abs(mp.mpmathify(complex(a)) - b)) for b in other] for a in one])
     rows, columns = linear_sum_assignment(cost)
     return float(cost[rows, columns].max())
+
+
+def multiplicative(n: int, cutoff: int, phi: Callable[[int], Any], shifts: int) -> Elements:
+    """⟨r|W|s⟩ of W = ∏_j φ(x_j), φ(x) = Σ_l φ_l x^l, on SU(n).
+
+    Σ_m det φ_{r_i − i − s_j + j + m}: the Cauchy–Binet form of Weyl's integral, the sum over m from
+    x_1 ⋯ x_n = 1 (Jacobi–Trudi for skew diagrams, Macdonald I.5; handbook formula). ``shifts``: largest |m|.
+    """
+    basis = [rows_of(labels) for labels in label_list(n, cutoff)]
+    reach = shifts + 2 * (cutoff + n)
+    table = {order: phi(order) for order in range(-reach, reach + 1)}
+    found: Elements = {}
+    for i, r in enumerate(basis):
+        for j, s in enumerate(basis):
+            orders = [[r[a] - a - s[b] + b for b in range(n)] for a in range(n)]
+            # |φ| falls on both sides: shifts around the middle of the diagonal
+            middle = -(sum(r) - sum(s)) // n
+            found[i, j] = sum(
+                (determinant([[table[k + m] for k in row] for row in orders]))
+                for m in range(middle - shifts // 2, middle + shifts // 2 + 1)
+            )
+    return found
+
+
+def determinant(rows: list[list[Any]]) -> Any:
+    """By expansion along the first row."""
+    if len(rows) == 1:
+        return rows[0][0]
+    return sum(
+        (-1) ** k * rows[0][k] * determinant([row[:k] + row[k + 1 :] for row in rows[1:]])
+        for k in range(len(rows))
+    )
+
+
+def coefficients_by_quadrature(
+    labels: Sequence[Labels], density: Callable[..., Any], points: int
+) -> list[Any]:
+    """w_c = ∫dP χ_c* W of SU(3), trapezoidal rule over two eigenphases with Weyl's measure, in mpmath.
+
+    Exponentially convergent for analytic W (L. N. Trefethen, J. A. C. Weideman, *SIAM Rev.* 56 (2014) 385);
+    characters from the quotient of determinants times the denominator, so that nothing is divided.
+    """
+    steps = [mp.expjpi(2 * mp.mpf(k) / points) for k in range(points)]
+    totals = [mp.mpf(0)] * len(labels)
+    for x in steps:
+        for y in steps:
+            eigenvalues = (x, y, 1 / (x * y))
+            vandermonde = determinant([[e**p for p in (2, 1, 0)] for e in eigenvalues])
+            weight = density(eigenvalues) * vandermonde
+            for place, one in enumerate(labels):
+                rows = rows_of(one)
+                alternant = determinant([[e ** (rows[p] + 2 - p) for p in range(3)] for e in eigenvalues])
+                totals[place] += mp.conj(alternant) * weight
+    return [total / (6 * points**2) for total in totals]

@@ -1,63 +1,14 @@
-"""Levels followed along a path: through crossings, complex mergers and from infinite masses."""
+"""Masses along a line of one parameter, as branches, with errors and verdicts."""
 
 from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
-from hypothesis import strategies as st
 
 import haarloom as hl
 from haarloom.exceptions import MissingValueError, ParameterError, SizeError
 from haarloom.numerics.branches import masses_along
-from haarloom.numerics.tracking import tracked
 from numerics.models import EMBER, SU3
-
-
-def followed(values):
-    order = tracked(values)
-    return np.take_along_axis(values, order, axis=1)
-
-
-@given(st.permutations(range(4)), st.integers(0, 3))
-def test_smooth_branches_cross_and_are_found_whatever_the_order_at_each_point(order, seed):
-    x = np.linspace(0, 1, 40)
-    branches = np.stack([1 + x, 2 - x, 3 + 0.2 * x, 4 - 2.5 * x], axis=1)
-    rng = np.random.default_rng(seed)
-    shuffled = branches.copy()
-    for row in shuffled[1:]:
-        rng.shuffle(row)
-    shuffled[0] = branches[0, list(order)]
-    assert np.allclose(followed(shuffled), branches[:, list(order)])
-
-
-def test_real_levels_that_merge_become_the_two_members_of_a_pair():
-    """m = 2 ± √(x² − 1/4) on both sides: no jump larger than the square root itself makes."""
-    x = np.linspace(-1, 1, 401)
-    root = np.sqrt((x**2 - 0.25).astype(complex))
-    values = np.stack([2 - root, 2 + root, 5 + 0 * root], axis=1)
-    result = followed(values)
-    inside = np.abs(x) < 0.49
-    assert (result[inside, 0].imag > 0).all(), "the branch listed first takes Im > 0"
-    assert np.allclose(result[inside, 0], np.conj(result[inside, 1]))
-    assert np.abs(np.diff(result, axis=0)).max() < 0.15
-    assert np.allclose(result[:, 2], 5)
-
-
-def test_a_path_may_start_at_infinite_masses():
-    x = np.linspace(0, 1, 30)
-    with np.errstate(divide="ignore"):
-        values = np.stack([1 + x, -np.log(x) + 2, -2 * np.log(x) + 3], axis=1).astype(complex)
-    result = followed(values)
-    assert np.isinf(result[0, 1:].real).all()
-    assert np.allclose(result[1:, 0], values[1:, 0])
-    assert (np.diff(result[1:, 1].real) < 0).all()
-    assert (np.diff(result[1:, 2].real) < 0).all()
-
-
-def test_nothing_to_follow_on_an_empty_or_a_single_point():
-    assert tracked(np.zeros((0, 3))).shape == (0, 3)
-    assert tracked(np.array([[3.0, 1.0, 2.0]])).tolist() == [[0, 1, 2]]
 
 
 def test_the_lowest_masses_of_ember_merge_between_their_two_exceptional_points():
@@ -82,6 +33,14 @@ def test_every_point_of_a_line_is_the_spectrum_there():
         spectrum = EMBER.spectrum(levels=5, t=t, z=0.5)
         for mass, error in zip(line.masses[row], line.error[row], strict=True):
             assert np.abs(spectrum.masses - mass).min() <= error + spectrum.error.max()
+
+
+@pytest.mark.parametrize("points", [8, 15, 106])
+def test_branches_do_not_depend_on_how_fine_the_line_is(points):
+    """z from 0 to 1 at t = 0.6: two mergers of levels 1 to 5 and a return to the real axis."""
+    fine = masses_along(EMBER, "z", np.linspace(0.0, 1.0, 841), levels=6, cutoff=7, t=0.6)
+    coarse = masses_along(EMBER, "z", np.linspace(0.0, 1.0, points), levels=6, cutoff=7, t=0.6)
+    np.testing.assert_allclose(coarse.masses, fine.masses[:: 840 // (points - 1)], rtol=0, atol=1e-6)
 
 
 def test_a_line_that_starts_at_vanishing_levels():

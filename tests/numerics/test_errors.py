@@ -129,9 +129,9 @@ def test_vanishing_levels_have_infinite_mass_and_say_so():
         ({"t": 1, "z": "a"}, ParameterError, "is no number"),
         ({"t": 1, "z": [0.1, 0.2]}, ParameterError, "several numbers"),
         ({"t": 1, "z": 0.3, "q": 1}, ParameterError, "'q' is no parameter"),
-        ({"t": 1, "z": 0.3, "levels": 0}, ParameterError, "levels = 0"),
-        ({"t": 1, "z": 0.3, "levels": 2.5}, ParameterError, r"levels = 2\.5"),
-        ({"t": 1, "z": 0.3, "levels": True}, ParameterError, "levels = True"),
+        ({"t": 1, "z": 0.3, "levels": 0}, ParameterError, "levels 0 given"),
+        ({"t": 1, "z": 0.3, "levels": 2.5}, ParameterError, r"levels 2\.5"),
+        ({"t": 1, "z": 0.3, "levels": True}, ParameterError, "levels True"),
         (
             {"t": 1, "z": 0.3, "levels": 11, "cutoff": 3},
             ParameterError,

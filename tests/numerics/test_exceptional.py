@@ -1,4 +1,4 @@
-"""Mergers on a line, to full precision, with what coalesces there; and as curves in a plane."""
+"""Mergers on a line, to full precision, with what coalesces there."""
 
 from __future__ import annotations
 
@@ -8,11 +8,13 @@ import numpy as np
 import pytest
 
 import haarloom as hl
+from haarloom.actions.exponential_coupling import exponential_coupling
 from haarloom.exceptions import ConvergenceError, MissingValueError, ParameterError
-from haarloom.numerics.boundary import complex_boundary
 from haarloom.numerics.compile import compile_transfer
 from haarloom.numerics.exceptional import exceptional_points
-from numerics.models import EMBER, EMBER_BOTH, SU2
+from haarloom.numerics.mergers import MatrixFamily, mergers_on
+from haarloom.numerics.truncation import truncate
+from numerics.models import EMBER, EMBER_BOTH, SU2, SU3
 
 MERGER = 0.41010045115116181143
 
@@ -64,6 +66,44 @@ def test_all_mergers_on_a_line_and_their_mirror_images():
         assert any(abs(value * other - 1) < 1e-8 for other in found)
 
 
+def test_levels_that_cross_at_the_end_of_the_line_do_not_count():
+    """At z = 0 the fundamental and its conjugate have equal levels and vectors of their own."""
+    for between in ((0, 0.5), (0, 0.42), (0.4, 0.42)):
+        found = exceptional_points(EMBER, "z", between, levels=3, t=1)
+        assert [m.value for m in found] == [pytest.approx(MERGER, abs=1e-13)]
+
+
+def test_mergers_on_a_coarse_grid_are_those_on_a_fine_one():
+    """Newton's method stays in its cell, or the cell is cut finer."""
+    fine = exceptional_points(EMBER, "z", (0.05, 2.6), levels=8, samples=401, t=0.6)
+    coarse = exceptional_points(EMBER, "z", (0.05, 2.6), levels=8, samples=33, t=0.6)
+    assert [(m.level, pytest.approx(m.value, abs=1e-9)) for m in fine] == [(m.level, m.value) for m in coarse]
+    assert len(fine) >= 4
+
+
+def test_mergers_where_the_link_mixes_irreps():
+    """exp[λ(L L′* + L* L′)]: the pair is real on one side and complex on the other, as LAPACK says."""
+    model = hl.RingModel(exponential_coupling(SU3, "lam"), hl.static_fermions(SU3, "z"))
+    family = MatrixFamily(model, 7, ("z",), {"lam": 0.1})
+    found = list(mergers_on(family, np.linspace(0.02, 1, 20), levels=7))
+    assert found
+    for _, merger in found:
+        assert merger is not None
+        kinds = []
+        for offset in (-1e-4, 1e-4):
+            truncation = truncate(model, 7, {"lam": 0.1, "z": merger.value + offset})
+            values = np.linalg.eigvals(truncation.dense)
+            pair = values[np.argsort(np.abs(values - merger.eigenvalue))[:2]]
+            kinds.append(bool(np.iscomplex(pair).all()))
+            assert abs(pair[0] - pair[1]) < 0.1 * merger.eigenvalue
+        assert sorted(kinds) == [False, True]
+
+
+def test_a_complex_matrix_has_no_mergers_of_this_kind():
+    with pytest.raises(ParameterError, match="T is not real"):
+        exceptional_points(EMBER_BOTH, "z", (0.1, 0.5), t=1, zbar=0.1 + 0.1j)
+
+
 def test_nothing_merges_where_t_is_symmetric():
     two = hl.RingModel(hl.heat_kernel(SU2, "t"), hl.static_fermions(SU2, "z"))
     assert exceptional_points(two, "z", (0.1, 2.0), t=1) == ()
@@ -80,6 +120,8 @@ def test_nothing_merges_where_t_is_symmetric():
         ("z", (0.3, np.inf), {"t": 1}, ParameterError, r"no exact number|not finite"),
         ("z", (0.3, 0.5), {}, MissingValueError, "no value for t"),
         ("z", (0.45, 0.5), {"t": 1}, ConvergenceError, "nowhere for z between"),
+        ("z", (0.3,), {"t": 1}, ParameterError, "give the two ends"),
+        ("z", (0.3, 0.5), {"t": 1, "digits": 0}, ParameterError, "digits = 0"),
     ],
 )
 def test_bad_lines(parameter, between, values, error, message):
@@ -87,87 +129,6 @@ def test_bad_lines(parameter, between, values, error, message):
         EMBER.exceptional_point(parameter, between, **values)
 
 
-def gap_of(model, names, point, fixed, eigenvalue):
-    """Distance, relative to λ, of the two eigenvalues nearest to λ*, from a larger basis by LAPACK."""
-    values = np.linalg.eigvals(compile_transfer(model, 12)(**dict(zip(names, point, strict=True)), **fixed))
-    pair = values[np.argsort(np.abs(values - eigenvalue))[:2]]
-    return abs(pair[0] - pair[1]) / abs(eigenvalue)
-
-
-def assert_mergers(model, boundary, curve, every):
-    for index in range(0, len(curve.points), every):
-        gap = gap_of(model, boundary.axes, curve.points[index], boundary.fixed, curve.eigenvalue[index])
-        # √ of the distance to the merger: 1e-12 off in the plane parts the levels by about 1e-6
-        assert gap < 3e-5
-
-
-@pytest.fixture(scope="module")
-def boundary():
-    return EMBER.complex_boundary(z=(0.1, 0.95), t=(0.35, 2.0), step=0.05)
-
-
-def test_points_of_the_boundary_are_mergers(boundary):
-    assert boundary.axes == ("z", "t")
-    assert boundary.curves
-    for curve in boundary.curves:
-        assert len(curve.points) == len(curve.mass) == len(curve.level) == len(curve.error)
-        assert (curve.error < 1e-9).all()
-        assert_mergers(EMBER, boundary, curve, 5)
-
-
-def test_the_boundary_passes_through_the_merger_at_t_1(boundary):
-    crossings = []
-    for curve in boundary.curves:
-        t = curve.points[:, 1]
-        for i in np.flatnonzero((t[1:] - 1) * (t[:-1] - 1) <= 0):
-            share = (1 - t[i]) / (t[i + 1] - t[i])
-            crossings.append(curve.points[i, 0] + share * (curve.points[i + 1, 0] - curve.points[i, 0]))
-    assert min(abs(z - MERGER) for z in crossings) < 2e-3
-
-
-def test_the_boundary_parts_real_from_complex(boundary):
-    """A step across the curve changes the verdict of the pair."""
-    curve = boundary.curves[0]
-    for index in range(3, len(curve.points) - 3, 9):
-        along = curve.points[index + 1] - curve.points[index - 1]
-        across = np.array([-along[1], along[0]]) / np.linalg.norm(along) * 2e-3
-        verdicts = set()
-        for sign in (-1, 1):
-            z, t = curve.points[index] + sign * across
-            spectrum = EMBER.spectrum(levels=int(curve.level[index]) + 2, z=z, t=t)
-            verdicts.add(spectrum.verdicts[int(curve.level[index]) - 1])
-        assert verdicts == {"real", "complex pair"}
-
-
-def test_neighbouring_points_are_no_further_apart_than_the_step(boundary):
-    size = np.array([0.85, 1.65])
-    for curve in boundary.curves:
-        steps = np.linalg.norm(np.diff(curve.points, axis=0) / size, axis=1)
-        assert steps.max() <= 1.6 * 0.05
-
-
-def test_through_a_fold_with_antiparticles():
-    """The (z, z̄) plane is mirrored at z = z̄, where the model is Hermitian: any fold found is one."""
-    boundary = EMBER_BOTH.complex_boundary(z=(0.05, 1.2), zbar=(0.0, 0.9), t=1.0, step=0.04, lines=4)
-    assert boundary.curves
-    for curve in boundary.curves:
-        assert_mergers(EMBER_BOTH, boundary, curve, 7)
-        for fold in curve.folds:
-            steps = np.diff(curve.points[fold - 1 : fold + 2], axis=0)
-            assert (steps[0] * steps[1] < 0).any()
-
-
-@pytest.mark.parametrize(
-    ("values", "error", "message"),
-    [
-        ({"z": (0.1, 0.9), "t": 1.0}, ParameterError, "1 parameters have a range"),
-        ({"z": 0.3, "t": 1.0}, ParameterError, "0 parameters have a range"),
-        ({"z": (0.9, 0.1), "t": (0.5, 1.0)}, ParameterError, r"empty or not finite"),
-        ({"z": (0.1, np.inf), "t": (0.5, 1.0)}, ParameterError, r"not finite"),
-        ({"z": (0.1, 0.5, 0.9), "t": (0.5, 1.0)}, ParameterError, "pair"),
-        ({"z": (0.1, 0.9), "q": (0.5, 1.0), "t": 1.0}, ParameterError, "'q' is no parameter"),
-    ],
-)
-def test_bad_planes(values, error, message):
-    with pytest.raises(error, match=message):
-        complex_boundary(EMBER, **values)
+def test_a_grid_has_at_least_two_points():
+    with pytest.raises(ParameterError, match="samples 1 given"):
+        exceptional_points(EMBER, "z", (0.3, 0.5), samples=1, t=1)

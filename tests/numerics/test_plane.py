@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 import threading
+from dataclasses import replace
 
 import numpy as np
 import pytest
 
 import haarloom as hl
+from haarloom.numerics import frames
 from haarloom.numerics.corrections import corrected
 from haarloom.numerics.labels import conjugation
 from haarloom.numerics.plane import Plane, solve_plane
@@ -156,3 +158,48 @@ def test_the_blas_limit_holds_until_whoever_set_it_leaves():
     outer()
     assert seen == [{1}] * 4
     assert blas_threads() == before
+
+
+COARSE = {
+    "far from normal": (EMBER, ("t", "z"), (1.1, 2.0), (0.5, 1.0), {}),
+    "weak coupling, mergers": (EMBER, ("t", "z"), (0.3, 0.6), (0.3, 0.5), {}),
+    "antiparticles": (EMBER_BOTH, ("z", "zbar"), (0.2, 0.5), (0.05, 0.1), {"t": 0.9}),
+    "a complex fugacity": (EMBER_BOTH, ("t", "zbar"), (0.8, 1.2), (0.05, 0.2), {"z": 0.3 * np.exp(0.4j)}),
+}
+
+
+@pytest.mark.parametrize("name", COARSE)
+def test_radii_hold_where_subspaces_are_interpolated_coarsely(name):
+    """Against LAPACK at every point; a radius a hundred times too large would say nothing either."""
+    model, names, *ends, fixed = COARSE[name]
+    axes = np.linspace(*ends[0], 30), np.linspace(*ends[1], 30)
+    plane = Plane(model, 7, names, axes, fixed, 4, 1e-3)
+    coarse = frames._frames(plane, (5, 6))
+    values, radius, _ = frames._everywhere(plane, replace(coarse, swell=frames._swell(plane, coarse)))
+    assert np.isfinite(radius).mean() > 0.5
+    first, second = (grid.reshape(-1) for grid in np.meshgrid(*axes, indexing="ij"))
+    exact = np.linalg.eigvals(plane.batch(first, second).matrix).reshape(30, 30, -1)
+    apart = np.abs(values[..., :, None] - exact[..., None, :]).min(axis=-1)
+    assert apart.max() > 1e-12, "the interpolation was too good to say anything"
+    assert 0.01 < (apart / (radius + 1e-13)).max() <= 1
+
+
+def test_the_resolvent_of_what_is_left_out_is_measured(monkeypatch):
+    """Against Σ x yᵀ/(Λ − λ) over the levels left out, from NumPy's eigenvectors."""
+    monkeypatch.setattr(frames, "SPREAD", 1.0)
+    plane = plane_of("one axis each", 40, 40, cutoff=6)
+    found = frames._frames(plane, (5, 5))
+    count = found.groups[-1].stop
+    largest = 1.0
+    for row, column in ((0, 0), (0, 4), (2, 2), (4, 0), (4, 4)):
+        matrix = plane.batch(found.nodes[0][[row]], found.nodes[1][[column]]).matrix[0]
+        values, right = np.linalg.eig(matrix)
+        order = np.argsort(-np.abs(values))
+        values, right = values[order], right[:, order]
+        left = np.linalg.inv(right)
+        rest = found.rest * np.abs(values[count - 1])
+        for level in values[: plane.levels]:
+            outside = (right[:, count:] / (values[count:] - level)) @ left[count:]
+            largest = max(largest, np.linalg.norm(outside, 2) * (np.abs(level) - rest))
+    assert frames._swell(plane, found) == pytest.approx(largest, rel=1e-8)
+    assert largest > 1.05, "the example is too near to normal"

@@ -117,7 +117,7 @@ def test_faces():
         ("q", {}, ParameterError, "'q' is no parameter"),
         ("z", {"order": 0}, ParameterError, "order = 0"),
         ("z", {"order": 1.5}, ParameterError, "order"),
-        ("z", {"levels": 0}, ParameterError, "levels = 0"),
+        ("z", {"levels": 0}, ParameterError, "levels 0 given"),
         ("z", {"t": ("1", "2")}, ParameterError, "single exact numbers"),
         ("t", {"z": "0.3"}, ConvergenceError, "not diagonal"),
     ],

@@ -1,8 +1,8 @@
 """Manton's action against direct quadrature, centre images included.
 
-N. S. Manton, *Phys. Lett. B* 96 (1980) 328. The code uses a collapsed Gauss rule on one alcove; here SU(2)
-has a closed form in error functions (mpmath) and SU(3) is integrated by SciPy over the whole torus with the
-shortest geodesic found by trying every shift of the phases.
+N. S. Manton, *Phys. Lett. B* 96 (1980) 328. The code takes determinants of one-dimensional integrals; here
+SU(2) is integrated by mpmath, SU(3) by SciPy over the whole torus with the shortest geodesic found by trying
+every shift of the phases, N ≤ 4 by Gauss's rule over one alcove, and more colours by random matrices.
 """
 
 from __future__ import annotations
@@ -13,9 +13,12 @@ import mpmath
 import numpy as np
 import pytest
 from scipy.integrate import dblquad
+from scipy.stats import unitary_group
 
 from haarloom.actions import manton
 from haarloom.algebra.group import SU
+from haarloom.torus.alcove_gauss import alcove_nodes
+from haarloom.torus.characters import characters
 
 
 @pytest.mark.parametrize("beta", [0.5, 3.0, 20.0])
@@ -72,3 +75,51 @@ def test_an_element_of_the_centre_is_a_geodesic_distance_away(n: int) -> None:
     G = SU(n)
     weight = manton(G, "beta").plaquette_at(np.full((1, n - 1), 2 * np.pi / n), {"beta": 1.0})
     assert weight[0] == pytest.approx(np.exp(-((2 * np.pi) ** 2) * (n - 1) / n / (2 * n)), rel=1e-12)
+
+
+@pytest.mark.parametrize("n", [2, 3, 4])
+@pytest.mark.parametrize("beta", [1e-4, 1.0, 12.0, 40.0])
+def test_determinants_against_gauss_rule_on_the_alcove(n: int, beta: float) -> None:
+    """The code's determinants of one-dimensional integrals against quadrature over all eigenphases."""
+    G = SU(n)
+    irreps = G.irreps(2)
+    angles, weights = alcove_nodes(n, {2: 240, 3: 90, 4: 36}[n])
+    # on the alcove the phases themselves are the shortest geodesic
+    weighted = weights * np.exp(-beta / (2 * n) * (angles**2).sum(axis=1))
+    integrals = weighted @ characters(irreps, angles).conj() / weighted.sum()
+    expected = integrals.real / np.array([irrep.dimension for irrep in irreps])
+    k, error = manton(G, "beta").coefficients_at(irreps, {"beta": beta})
+    assert np.all(np.abs(k - expected) <= error + 1e-12)
+    assert error.max() < 1e-11
+
+
+@pytest.mark.parametrize("n", [5, 6, 8])
+def test_many_colours_against_random_matrices(n: int) -> None:
+    """Haar-random U(N) matrices (F. Mezzadri, Notices AMS 54 (2007) 592), their determinant divided out."""
+    G, beta = SU(n), 3.0
+    matrices = unitary_group.rvs(n, size=20_000, random_state=np.random.default_rng(8))
+    phases = np.angle(np.linalg.eigvals(matrices))
+    phases = phases - phases.sum(axis=1, keepdims=True) / n
+    phases[:, 0] -= phases.sum(axis=1)
+    # another N-th root of the determinant is as likely: a random element of the centre
+    phases = phases + 2 * np.pi * np.random.default_rng(9).integers(0, n, (len(phases), 1)) / n
+    phases[:, 0] -= phases.sum(axis=1)
+    link = manton(G, "beta")
+    weights = link.plaquette_at(phases, {"beta": beta})
+    assert weights is not None
+    loops = np.exp(1j * phases).sum(axis=1).real / n
+    expected = (weights * loops).sum() / weights.sum()
+    spread = np.sqrt((weights**2 * (loops - expected) ** 2).sum()) / weights.sum()
+    k, error = link.coefficients_at([G.fundamental], {"beta": beta})
+    assert abs(k[0] - expected) <= 4 * spread
+    assert 4 * spread < 0.1 * k[0]
+    assert error[0] < 1e-12
+
+
+def test_many_irreps_and_many_colours_are_symmetric_under_conjugation() -> None:
+    G = SU(8)
+    irreps = G.irreps(2)
+    k, error = manton(G, "beta").coefficients_at(irreps, {"beta": [0.0, 5.0]})
+    swapped, _ = manton(G, "beta").coefficients_at([r.conjugate for r in irreps], {"beta": [0.0, 5.0]})
+    assert np.all(np.abs(k - swapped) <= 2 * error)
+    assert k[0].tolist() == [float(r == G.trivial) for r in irreps]

@@ -2,21 +2,24 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 import pytest
 import sympy
 
 import haarloom as hl
+from haarloom.actions import Link
 from haarloom.ring.claims import (
     ElementClaim,
     ExpansionClaim,
+    KernelClaim,
     LinkFactorClaim,
     OverlapClaim,
     ProductClaim,
     SelectionClaim,
     SiteElementClaim,
 )
+from haarloom.ring.torus_function import form_scale
 
 
 def ember(n: int = 3, **options) -> hl.RingModel:
@@ -96,12 +99,89 @@ def test_small_link_coefficients_are_still_checked():
 
 
 def test_what_cannot_be_replayed_is_said_and_does_not_pass():
-    """The plaquette weight of SU(8) needs more grid points than fit; the finite statements still replay."""
-    verification = ember(8).transfer_matrix(1).derivation("8", "1").verify()
+    """Gauss's rule needs more nodes on the alcove of SU(5) than fit; the finite statements still replay."""
+    G = hl.SU(5)
+    model = hl.RingModel(hl.manton(G, "beta"), hl.static_fermions(G, "z"))
+    verification = model.transfer_matrix(1).derivation("5", "1").verify()
     assert not verification.passed
     assert all(step.passed for step in verification.steps)
     assert [bool(step.not_replayed) for step in verification.steps] == [False, False, False, True]
     assert "does not settle" in repr(verification)
+
+
+def test_coefficients_without_a_weight_behind_them_are_said_to_be_such():
+    @dataclass(frozen=True)
+    class Bare(Link):
+        group: hl.SU
+        k: sympy.Expr
+
+        def coefficient(self, irrep):
+            return self.k ** sum(irrep.labels)
+
+    model = hl.RingModel(Bare(hl.SU(3), sympy.Symbol("k")), hl.static_fermions(hl.SU(3), "z"))
+    verification = model.transfer_matrix(1).derivation("3", "1").verify()
+    assert not verification.passed
+    assert "give it a plaquette weight (plaquette_at) or a kernel" in repr(verification)
+
+
+def links() -> dict[str, Link]:
+    """One link weight of each kind that has a road of its own through the replay."""
+    G = hl.SU(3)
+    heat, finite = hl.heat_kernel(G, "t"), hl.loop_coupling(G, "lam")
+    pairs = hl.bilinear_coupling(G, {("1", "1"): 1, ("3", "3"): "lam", ("3", "6bar"): "mu", ("1", "8"): "nu"})
+    return {
+        "Manton, SU(2)": hl.manton(hl.SU(2), "beta"),
+        "Manton, SU(3), two plaquettes": hl.manton(G, "beta", plaquettes=2),
+        "Manton, SU(4)": hl.manton(hl.SU(4), "beta"),
+        "loop coupling": finite,
+        "diagonal pairs": hl.bilinear_coupling(G, {("1", "1"): 2, ("3", "3"): "lam"}),
+        "pairs": pairs,
+        "coupled heat kernel": heat * finite,
+        "coupled Wilson": pairs * hl.wilson(G, "beta", plaquettes=2),
+        "coupled Manton": hl.manton(G, "beta") * finite,
+        "stacked": heat @ hl.wilson(G, "beta") @ hl.manton(G, "b"),
+        "heat kernel, SU(7)": hl.heat_kernel(hl.SU(7), "t", plaquettes=2),
+        "heat kernel, SU(8)": hl.heat_kernel(hl.SU(8), "t"),
+        "Wilson, SU(8)": hl.wilson(hl.SU(8), "beta"),
+        "loop coupling, SU(8)": hl.loop_coupling(hl.SU(8), "lam"),
+        "table, SU(8)": hl.link_from_coefficients(hl.SU(8), {"1": 1, "8": "k"}),
+    }
+
+
+@pytest.mark.parametrize("name", links(), ids=str)
+def test_every_kind_of_link_replays_and_a_wrong_value_does_not(name):
+    link = links()[name]
+    model = hl.RingModel(link, hl.static_fermions(link.group, "z"))
+    derivation = model.transfer_matrix(1).derivation(link.group.fundamental, link.group.trivial)
+    assert derivation.element != 0
+    assert derivation.verify().passed, derivation.verify()
+    place, number, wrong = next(
+        (place, number, replace(claim, value=claim.value * (1 + sympy.Rational(1, 10**8))))
+        for place, step in enumerate(derivation.steps)
+        for number, claim in enumerate(step.claims)
+        if isinstance(claim, KernelClaim)
+        or (isinstance(claim, LinkFactorClaim) and claim.irrep != link.group.trivial)
+    )
+    step = derivation.steps[place]
+    claims = (*step.claims[:number], wrong, *step.claims[number + 1 :])
+    steps = (*derivation.steps[:place], replace(step, claims=claims), *derivation.steps[place + 1 :])
+    spoiled = replace(derivation, steps=steps).verify()
+    assert not spoiled.steps[place].passed
+
+
+@pytest.mark.parametrize("n", [7, 8])
+def test_matter_of_infinite_reach_replays_where_no_grid_fits(n):
+    G = hl.SU(n)
+    site = hl.static_bosons(G, "z", "w") * hl.loop_field(G, {str(n): "h"})
+    derivation = hl.RingModel(hl.heat_kernel(G, "t"), site).transfer_matrix(1).derivation(str(n), "1")
+    assert derivation.verify().passed, derivation.verify()
+
+
+def test_a_form_that_is_not_the_weight_is_not_used():
+    G = hl.SU(8)
+    right = hl.wilson(G, "beta").determinant_form({"beta": 4.0})
+    assert form_scale(right, right.at) == pytest.approx(1)
+    assert form_scale(right, lambda angles: right.at(angles) ** 2) is None
 
 
 def test_faces_hold_the_statements():

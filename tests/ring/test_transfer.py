@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import inspect
+
 import numpy as np
 import pytest
 import sympy
@@ -15,6 +17,9 @@ from haarloom.exceptions import (
     SizeError,
     UnknownNameError,
 )
+from haarloom.ring.model import OPTIONS
+from haarloom.torus.characters import character
+from haarloom.torus.quadrature import haar_grid
 
 z, t = sympy.symbols("z t")
 
@@ -125,3 +130,40 @@ def test_a_link_that_mixes_irreps_gives_the_eigenvalues_of_the_symmetric_form():
     symmetric = compile_transfer(model, 2)(**values)
     order = np.sort_complex
     assert np.allclose(order(np.linalg.eigvals(symmetric)), order(np.linalg.eigvals(exact)), atol=1e-12)
+
+
+def test_a_parameter_may_not_have_the_name_of_an_option():
+    G = hl.SU(3)
+    with pytest.raises(ParameterError, match=r"named levels, .* rename them, for instance levels_1"):
+        hl.RingModel(hl.heat_kernel(G, "t"), hl.static_fermions(G, "levels"))
+
+
+def test_every_option_of_the_models_methods_is_reserved():
+    from haarloom.numerics import boundary, certify, exceptional, scan, series, spectrum
+
+    methods = (
+        spectrum.spectrum,
+        certify.certify,
+        series.series,
+        exceptional.exceptional_point,
+        boundary.complex_boundary,
+        scan.scan,
+    )
+    options = {name for method in methods for name in inspect.signature(method).parameters}
+    assert options - {"values"} <= OPTIONS
+
+
+def test_many_copies_cost_no_more_than_the_irreps_of_the_basis(monkeypatch):
+    """Of the 1,326 characters of W only those that can join two irreps of the basis are looked at."""
+    G, asked = hl.SU(3), []
+    site = hl.static_fermions(G, "z", copies=50)
+    original = type(site).coefficient
+    monkeypatch.setattr(type(site), "coefficient", lambda self, c: asked.append(c) or original(self, c))
+    model = hl.RingModel(hl.heat_kernel(G, "t"), site)
+    T = model.transfer_matrix(1)
+    assert max(sum(irrep.labels) for irrep in asked) == 2
+    numbers = {"t": 0.4, "z": 0.3}
+    angles, weights = haar_grid(G, 120)
+    density = site.density_at(angles, numbers) * weights
+    expected = np.sum(character(G.fundamental, angles).conj() * density) * np.exp(-0.4 * 4 / 6)
+    assert float(T["3", "1"].subs(numbers)) == pytest.approx(expected.real, rel=1e-12)

@@ -2,7 +2,8 @@
 
 A link weight of your own: derive a frozen dataclass from `Link`, with `group` and parameters as fields,
 and write `coefficient`. A site weight: derive from `Site` and write `class_function`, or, where W is no
-finite combination of characters, from `haarloom.actions.torus_site.TorusSite` and write `density_at`.
+finite combination of characters, from `haarloom.actions.torus_site.TorusSite` and write `density_at`; with
+`character_factors` beside it, proofs cover it too.
 """
 
 from __future__ import annotations
@@ -16,16 +17,18 @@ import sympy
 from numpy.typing import NDArray
 from sympy import Expr, Symbol
 
+from haarloom.actions.character_factors import CharacterFactor, ExponentialFactor, FiniteFactor
 from haarloom.actions.parameters import Field, Values, evaluate, exact_text, free_parameters
 from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
-from haarloom.exceptions import ClassFunctionError, ParameterError
+from haarloom.exceptions import ClassFunctionError, ConvergenceError, ParameterError
 
 if TYPE_CHECKING:
     from haarloom.actions.link_products import CoupledLink, StackedLinks
     from haarloom.actions.product import SiteProduct
     from haarloom.actions.tensions import Tensions
+    from haarloom.torus.determinant_forms import DeterminantForm
 
 __all__ = ["Link", "Site", "stacked"]
 
@@ -50,11 +53,15 @@ class _Weight:
         return free_parameters(self._expressions())
 
     def _expressions(self) -> list[Expr]:
-        values = (getattr(self, field.name) for field in fields(self))  # type: ignore[arg-type]
-        return [value for value in values if isinstance(value, Expr)]
+        values = [getattr(self, field.name) for field in fields(self)]  # type: ignore[arg-type]
+        tables = [value for value in values if _is_table(value)]
+        return [
+            *(value for value in values if isinstance(value, Expr)),
+            *(entry for table in tables for _, entry in table),
+        ]
 
     def describe(self) -> dict[str, Any]:
-        """Kind and fields as exact strings; integers stay integers."""
+        """Kind and fields as exact strings; integers stay integers, tables by irrep become mappings."""
         described: dict[str, Any] = {"kind": self.kind}
         for field in fields(self):  # type: ignore[arg-type]
             if field.name != "group":
@@ -82,7 +89,20 @@ def _described(value: Any) -> Any:
         return exact_text(value)
     if isinstance(value, Irrep):
         return value.name
+    if _is_table(value):
+        return {_key_text(key): exact_text(entry) for key, entry in value}
     return value
+
+
+def _is_table(value: Any) -> bool:
+    """Whether it is a tuple of (irrep or pair of irreps, expression)."""
+    return isinstance(value, tuple) and all(
+        isinstance(row, tuple) and len(row) == 2 and isinstance(row[1], Expr) for row in value
+    )
+
+
+def _key_text(key: Irrep | tuple[Irrep, Irrep]) -> str:
+    return key.name if isinstance(key, Irrep) else f"({key[0].name}, {key[1].name})"
 
 
 def stacked(numbers: Sequence[NDArray[Any]]) -> NDArray[Any]:
@@ -98,7 +118,17 @@ class Link(_Weight):
     diagonal: ClassVar[bool] = True
     bounds_proven: ClassVar[bool] = False
     """Whether `largest_outside` is a theorem rather than an estimate."""
+    monotone: ClassVar[bool] = False
+    """Whether that theorem holds between two values of a field if it holds at both: a proof over an interval
+    then needs its ends alone."""
+    positive: ClassVar[bool] = False
+    """Whether every k_r ≥ 0 at all admissible parameters."""
     plaquettes: int = 1
+
+    @property
+    def kernel_reach(self) -> int | None:
+        """Largest Σ a_i in K(P, P′), and in w(U) if there is one, where they are finite sums; else None."""
+        return None
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """Exact k_r."""
@@ -127,6 +157,16 @@ class Link(_Weight):
         """No plaquette weight is known in general."""
         return None
 
+    def determinant_form(self, values: Values) -> DeterminantForm | None:
+        """w(U), up to a constant, as a form whose coefficients are determinants; None if it has none."""
+        return None
+
+    def kernel_density_at(
+        self, angles: NDArray[Any], others: NDArray[Any], values: Values
+    ) -> NDArray[Any] | None:
+        """K(P, P′) on two copies of the torus, all N eigenphases in each; None if no closed form is known."""
+        return None
+
     def kernel(self, irreps: Sequence[Irrep]) -> sympy.ImmutableMatrix:
         """The diagonal matrix of exact k_r."""
         return sympy.ImmutableMatrix(sympy.diag(*[self.coefficient(irrep) for irrep in irreps]))
@@ -136,6 +176,13 @@ class Link(_Weight):
         k, error = self.coefficients_at(irreps, values)
         one = np.eye(len(irreps))
         return k[..., None, :] * one, error[..., None, :] * one
+
+    def plaquette_factors(self) -> tuple[CharacterFactor, ...] | None:
+        """Exact factors of w(U) of one plaquette, from which k_r and their tail can be proven; None if
+        there are none.
+        """
+        exponent = self.exponent()
+        return None if exponent is None else (ExponentialFactor(exponent),)
 
     def exponent(self) -> ClassFunction | None:
         """ln w(U) of one plaquette as a finite class function, up to a constant; None if it is none."""
@@ -209,6 +256,11 @@ class Site(_Weight):
     finite: ClassVar[bool] = True
     bounds_proven: ClassVar[bool] = True
     """Whether `norm_bound` and `tail_bound` are theorems rather than estimates."""
+    unproven: ClassVar[str] = (
+        "its characters come from values on the torus of eigenphases, and nothing bounds what lies between "
+        "the grid points;"
+    )
+    """Why there are no exact factors, where there are none."""
 
     def class_function(self) -> ClassFunction:
         """The exact class function."""
@@ -251,6 +303,21 @@ class Site(_Weight):
             return np.zeros(())
         w, error = self.coefficients_at(beyond, values)
         return np.asarray(((np.abs(w) + error) * _dimensions(beyond)).sum(axis=-1))
+
+    def character_factors(self) -> tuple[CharacterFactor, ...]:
+        """Exact factors of W, from which its coefficients and their tail can be proven.
+
+        Raises
+        ------
+        ConvergenceError
+            If W is known by its values alone.
+        """
+        if not self.finite:
+            raise ConvergenceError(
+                f"no proven bound exists for the site weight {self.kind}: {self.unproven} "
+                "spectrum(...) gives masses with an error that rests on refining the grid."
+            )
+        return (FiniteFactor(self.class_function()),)
 
     def density_at(self, angles: NDArray[Any], values: Values) -> NDArray[Any]:
         """W at the given eigenphases, from its characters unless a class knows a closed form."""

@@ -13,12 +13,12 @@ from sympy import Expr, S
 
 from haarloom.actions.base import ROUNDING, Link, refuse_group, stacked
 from haarloom.actions.irrep_words import irrep_of
-from haarloom.actions.parameters import Field, Parameter, Values, as_parameter, evaluate, exact_text
+from haarloom.actions.parameters import Field, Parameter, Values, as_parameter, evaluate
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
 from haarloom.exceptions import ParameterError
 
-__all__ = ["BilinearCoupling", "bilinear_coupling"]
+__all__ = ["BilinearCoupling", "Pair", "bilinear_coupling"]
 
 _TABLE = Field(
     "couplings",
@@ -115,14 +115,6 @@ class BilinearCoupling(Link):
         """True if only pairs (r, r) are coupled."""
         return all(first == second for (first, second), _ in self.couplings)
 
-    def _expressions(self) -> list[Expr]:
-        return [value for _, value in self.couplings]
-
-    def describe(self) -> dict[str, Any]:
-        """Kind and couplings as text by pair."""
-        table = {f"({r.name}, {s.name})": exact_text(value) for (r, s), value in self.couplings}
-        return {"kind": self.kind, "couplings": table}
-
     def coefficient(self, irrep: Irrep) -> Expr:
         """The diagonal element λ_rr."""
         return dict(self.couplings).get((irrep, irrep), S.Zero)
@@ -147,6 +139,22 @@ class BilinearCoupling(Link):
         """Σ |λ_rs| over pairs with a label sum beyond the cutoff: a proven bound of the norm left out."""
         outside = [v for pair, v in self.couplings if max(sum(r.labels) for r in pair) > cutoff]
         return np.asarray(np.abs(stacked(evaluate(outside, values))).sum(axis=-1) * (1 + ROUNDING))
+
+    @property
+    def kernel_reach(self) -> int:
+        """Largest Σ a_i of the irreps coupled."""
+        return max(sum(irrep.labels) for pair, _ in self.couplings for irrep in pair)
+
+    def kernel_density_at(self, angles: NDArray[Any], others: NDArray[Any], values: Values) -> NDArray[Any]:
+        """K(P, P′) on two copies of the torus, all N eigenphases in each, the two broadcast."""
+        from haarloom.torus.characters import character
+
+        numbers = evaluate([value for _, value in self.couplings], values)
+        terms = (
+            number * character(r, angles) * character(s, others).conj()
+            for ((r, s), _), number in zip(self.couplings, numbers, strict=True)
+        )
+        return np.asarray(sum(terms))
 
     def formula(self) -> str:
         """LaTeX of the couplings."""

@@ -5,20 +5,17 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Any, ClassVar
+from typing import Any, ClassVar, Literal
 
 import numpy as np
 from numpy.typing import NDArray
 from sympy import Expr, S
 
-from haarloom.actions.base import refuse_group
-from haarloom.actions.fermions import COPIES, IRREP, determinant_latex, eigenphases_of
-from haarloom.actions.fugacities import fugacities, known_inputs
+from haarloom.actions.character_factors import BosonFactor, CharacterFactor
 from haarloom.actions.fugacity_table import general_linear_dimension
-from haarloom.actions.heat_kernel import positive_integer
-from haarloom.actions.irrep_words import irrep_of
-from haarloom.actions.multiplicative import Factor, multiplicative_coefficients
+from haarloom.actions.multiplicative import multiplicative_coefficients
 from haarloom.actions.parameters import Field, Parameter, Values
+from haarloom.actions.static_matter import COPIES, IRREP, StaticMatter, static_arguments
 from haarloom.actions.torus_site import TorusSite, summed_tail
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
@@ -41,16 +38,8 @@ def static_bosons(
 
     Parameters
     ----------
-    group : SU
-    z, zbar : number, expression or name
-        Fugacities of particles and antiparticles, of modulus below 1.
-    copies : int
-        n = spin states × flavours, the same for both.
-    irrep : Irrep, name or labels
-        R, the fundamental unless said otherwise; the antiparticles are in its conjugate.
-    **physical
-        Instead of z and z̄: ``mass``, ``mu``, ``temperature``; or ``kappa``, ``n_t``, ``mu`` for heavy
-        Wilson quarks at leading order in κ (see `haarloom.actions.fugacities`).
+    group, z, zbar, copies, irrep, **physical
+        As for `static_fermions`, with fugacities of modulus below 1.
 
     Raises
     ------
@@ -63,25 +52,16 @@ def static_bosons(
     >>> static_bosons(SU(3), "z").coefficient(SU(3).irrep(2, 0))
     z**2
     """
-    refuse_group("static_bosons", group)
-    return StaticBosons(
-        group,
-        *fugacities(z, zbar, (_Z, _ZBAR), **known_inputs(physical)),
-        positive_integer("copies", copies),
-        irrep_of(group, irrep),
-    )
+    given = (z, zbar, copies, irrep)
+    return StaticBosons(*static_arguments("static_bosons", group, (_Z, _ZBAR), given, physical))
 
 
 @dataclass(frozen=True)
-class StaticBosons(TorusSite):
+class StaticBosons(StaticMatter, TorusSite):
     """det_R(1 − zP)^{−n} det_R(1 − z̄P†)^{−n}; see `static_bosons`."""
 
-    group: SU
-    z: Expr
-    zbar: Expr
-    copies: int
-    irrep: Irrep
-
+    sign: ClassVar[Literal[1, -1]] = -1
+    statistics: ClassVar[Literal["fermion", "boson"]] = "boson"
     kind: ClassVar[str] = "static bosons"
     FIELDS: ClassVar[tuple[Field, ...]] = (_Z, _ZBAR, COPIES, IRREP)
     accuracy: ClassVar[str] = (
@@ -90,15 +70,12 @@ class StaticBosons(TorusSite):
     )
     bounds_proven: ClassVar[bool] = True
 
-    @property
-    def factors(self) -> tuple[Factor, ...] | None:
-        """Factors over the eigenvalues of P, if R is the fundamental or its conjugate."""
-        if self.irrep not in (self.group.fundamental, self.group.antifundamental):
-            return None
-        sense = 1 if self.irrep == self.group.fundamental else -1
-        forward = Factor("boson", self.z, self.copies, sense)
-        backward = Factor("boson", self.zbar, self.copies, -sense)
-        return (forward, backward) if self.zbar != 0 else (forward,)
+    def character_factors(self) -> tuple[CharacterFactor, ...]:
+        """The determinants of particles in R and of antiparticles in its conjugate."""
+        particles = BosonFactor(self.irrep, self.z, self.copies)
+        if self.zbar == 0:
+            return (particles,)
+        return (particles, BosonFactor(self.irrep.conjugate, self.zbar, self.copies))
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """Exact w_c: rational in z for particles alone in the fundamental, else a named coefficient."""
@@ -140,18 +117,6 @@ class StaticBosons(TorusSite):
         y = 1 + (edge - 1)[..., None] * (np.arange(1, 64) / 64)
         log = -power * (np.log1p(-y * z[..., None]) + np.log1p(-y * zbar[..., None]))
         return np.asarray(np.exp((log - start * np.log(y) - np.log1p(-1 / y)).min(axis=-1)))
-
-    def density_at(self, angles: NDArray[Any], values: Values) -> NDArray[Any]:
-        """∏ over the weights of R of (1 − z e^{iw·θ})^{−n} (1 − z̄ e^{−iw·θ})^{−n}."""
-        z, zbar = (self._value(name, values) for name in ("z", "zbar"))
-        phases, multiplicities = eigenphases_of(self.irrep, angles)
-        eigenvalues = np.exp(1j * phases)
-        factors = (1 - z[..., None] * eigenvalues) * (1 - zbar[..., None] / eigenvalues)
-        return np.asarray((factors ** (-self.copies * multiplicities)).prod(axis=-1))
-
-    def latex(self) -> str:
-        """Both determinants."""
-        return "W(P)=" + determinant_latex(self, "1-{}P", "1-{}P^\\dagger", -self.copies)
 
 
 def rational_coefficient(rows: tuple[int, ...], copies: int, z: Expr) -> Expr:

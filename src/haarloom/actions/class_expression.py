@@ -50,7 +50,9 @@ def class_expression(group: SU, source: str | Expr | ClassFunction) -> ClassExpr
     """
     if isinstance(source, ClassFunction):
         if source.group is not group:
-            raise ClassFunctionError(f"The class function belongs to {source.group}, not to {group}.")
+            raise ClassFunctionError(
+                f"The class function belongs to {source.group}, not to {group}; build both on the same group."
+            )
         return ClassExpression(group, source.in_characters())
     if isinstance(source, str):
         from haarloom.documents.class_expressions import parse_class_expression
@@ -213,7 +215,8 @@ def _check_word(word: AppliedUndef, group: SU) -> None:
     whole = [argument for argument in word.args if argument != Symbol("P")]
     if not all(argument.is_Integer for argument in whole):
         raise ClassFunctionError(
-            f"{word} needs whole numbers: tr(P, n) with a power, chi(…) with Dynkin labels."
+            f"{word} given; its arguments must be whole numbers: write tr(P, n) with a power n, such as "
+            "tr(P, 2), or chi(…) with Dynkin labels, such as chi(1, 1)."
         )
     if word.func.__name__ == "chi":
         group.irrep(*map(int, whole))

@@ -44,7 +44,10 @@ def coefficient_mapping(group: SU, source: Any) -> Mapping[Irrep | str, Any]:
 
 def _from_array(group: SU, array: Any) -> dict[Irrep | str, Any]:
     if array.dtype == object or not np.issubdtype(array.dtype, np.number):
-        raise ParameterError("An array of coefficients must hold numbers; for expressions use a mapping.")
+        raise ParameterError(
+            f"An array of {array.dtype} given; an array of coefficients must hold numbers: for expressions "
+            "use a mapping."
+        )
     if array.ndim == 1:
         cutoff = 0
         while group.count_irreps(cutoff) < len(array):
@@ -93,9 +96,12 @@ def _from_csv(group: SU, path: Path) -> dict[Irrep | str, Any]:
 def _row_irrep(group: SU, cells: list[str], named: bool, place: str) -> Irrep:
     width = 2 if named else group.n
     if len(cells) != width:
-        raise ParameterError(f"{place}: {len(cells)} cells found, {width} are needed.")
+        what = "a name and k" if named else f"{group.rank} labels and k"
+        raise ParameterError(f"{place}: {len(cells)} cells found, {width} are needed; write {what}.")
     if named:
         return group.irrep(cells[0])
     if not all(cell.isdigit() for cell in cells[:-1]):
-        raise ParameterError(f"{place}: labels are whole numbers ≥ 0, not {', '.join(cells[:-1])}.")
+        raise ParameterError(
+            f"{place}: {', '.join(cells[:-1])} found; labels are whole numbers ≥ 0, write them without signs."
+        )
     return group.irrep(*map(int, cells[:-1]))

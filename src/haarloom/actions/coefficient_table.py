@@ -13,7 +13,7 @@ from sympy import Expr, S
 from haarloom.actions.base import Link, refuse_group
 from haarloom.actions.coefficient_sources import coefficient_mapping
 from haarloom.actions.irrep_words import irrep_of
-from haarloom.actions.parameters import Field, Parameter, Values, as_parameter, exact_text
+from haarloom.actions.parameters import Field, Parameter, Values, as_parameter
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
 from haarloom.exceptions import ParameterError
@@ -85,13 +85,6 @@ class CoefficientTable(Link):
         shown = ", ".join(names[:12]) + (f" and {len(names) - 12} more" if len(names) > 12 else "")
         return f"k_r given for {shown}; every other k_r is set to zero."
 
-    def _expressions(self) -> list[Expr]:
-        return [value for _, value in self.coefficients]
-
-    def describe(self) -> dict[str, Any]:
-        """Kind and table by irrep name."""
-        return {"kind": self.kind, "coefficients": {r.name: exact_text(k) for r, k in self.coefficients}}
-
     def coefficient(self, irrep: Irrep) -> Expr:
         """k_r as listed, else zero."""
         return dict(self.coefficients).get(irrep, S.Zero)
@@ -103,6 +96,11 @@ class CoefficientTable(Link):
             return np.zeros(())
         k, error = self.coefficients_at(outside, values)
         return np.asarray((np.abs(k) + error).max(axis=-1))
+
+    @property
+    def kernel_reach(self) -> int:
+        """Largest Σ a_i of the irreps listed."""
+        return max(sum(irrep.labels) for irrep, _ in self.coefficients)
 
     def plaquette_at(self, angles: NDArray[Any], values: Values) -> NDArray[Any] | None:
         """Σ_r d_r k_r χ_r(U), the finite class function of one plaquette."""

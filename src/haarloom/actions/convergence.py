@@ -58,8 +58,8 @@ def convergence_radius(link: Link) -> Radius:
     exponent = finite_exponent(link)
     if len(exponent.free_symbols) != 1:
         raise ClassFunctionError(
-            f"A radius of convergence needs exactly one coupling left as a symbol; "
-            f"this weight has {len(exponent.free_symbols)}."
+            f"A radius of convergence needs exactly one coupling left as a symbol; this weight has "
+            f"{', '.join(sorted(map(str, exponent.free_symbols))) or 'none'}: give numbers for all but one."
         )
     [coupling] = exponent.free_symbols
     reach = max(sum(irrep.labels) for irrep in exponent)
@@ -71,7 +71,7 @@ def convergence_radius(link: Link) -> Radius:
     if change > 1e-4 * abs(longer):
         raise ConvergenceError(
             f"The nearest zero of w_0 does not settle by order {order}, the highest that fits for "
-            f"{link.group}."
+            f"{link.group}: take a smaller N, or couplings of irreps with smaller labels."
         )
     return Radius(abs(longer), change, longer)
 

@@ -48,7 +48,9 @@ def convert_coupling(group: SU, value: Parameter, given: Name, wanted: Name) -> 
     """
     for role, name in (("given", given), ("wanted", wanted)):
         if name not in CONVENTIONS:
-            raise ParameterError(f"{role} = {name!r} is no coupling; known are {', '.join(CONVENTIONS)}.")
+            raise ParameterError(
+                f"{role} = {name!r} is no coupling; known are {', '.join(CONVENTIONS)}: give one of these."
+            )
     coupling = as_parameter(value, Field(given, "positive real", given, CONVENTIONS[given].split(":")[0]))
     squared = {"g2": coupling, "beta": 2 * group.n / coupling, "tau": 2 * coupling}[given]
     return {"g2": squared, "beta": 2 * group.n / squared, "tau": squared * Rational(1, 2)}[wanted]

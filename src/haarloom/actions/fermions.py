@@ -4,34 +4,29 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Any, ClassVar
+from typing import Any, ClassVar, Literal
 
 import numpy as np
 import sympy
 from numpy.typing import NDArray
-from sympy import Expr, S
+from sympy import Expr
 
-from haarloom.actions.base import Site, refuse_group
-from haarloom.actions.fugacities import fugacities, known_inputs
 from haarloom.actions.fugacity_table import Monomials, fundamental_monomials, power_table
-from haarloom.actions.heat_kernel import positive_integer
-from haarloom.actions.irrep_words import irrep_of
-from haarloom.actions.multiplicative import Factor, multiplicative_coefficients
+from haarloom.actions.multiplicative import multiplicative_coefficients
 from haarloom.actions.parameters import Field, Parameter, Values, evaluate
+from haarloom.actions.static_matter import COPIES, IRREP, StaticMatter, static_arguments
 from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
 from haarloom.exceptions import SizeError
-from haarloom.torus.angles import full_angles
 
-__all__ = ["COPIES", "StaticFermions", "eigenphases_of", "static_fermions"]
+__all__ = ["StaticFermions", "static_fermions"]
 
 _Z = Field("z", "complex", "z", "fugacity z = exp((μ − M)/T) of the particles")
 _ZBAR = Field("zbar", "complex", "0", "fugacity z̄ = exp(−(μ + M)/T) of the antiparticles", True)
-COPIES = Field("copies", "positive integer", "1", "copies n = spin states × flavours", True)
-IRREP = Field("irrep", "irrep", "fundamental", "irrep R of the particles", True)
 
 _MOST_IRREPS = 3000
+_MOST_TERMS = 10_000
 _FEW_COPIES = 6
 _EPS = float(np.finfo(float).eps)
 
@@ -67,38 +62,19 @@ def static_fermions(
     >>> static_fermions(SU(3), mass="m", mu="mu", temperature="T").z
     exp((-m + mu)/T)
     """
-    refuse_group("static_fermions", group)
-    return StaticFermions(
-        group,
-        *fugacities(z, zbar, (_Z, _ZBAR), **known_inputs(physical)),
-        positive_integer("copies", copies),
-        irrep_of(group, irrep),
-    )
+    given = (z, zbar, copies, irrep)
+    return StaticFermions(*static_arguments("static_fermions", group, (_Z, _ZBAR), given, physical))
 
 
 @dataclass(frozen=True)
-class StaticFermions(Site):
+class StaticFermions(StaticMatter):
     """det_R(1 + zP)^n det_R(1 + z̄P†)^n; see `static_fermions`."""
 
-    group: SU
-    z: Expr
-    zbar: Expr
-    copies: int
-    irrep: Irrep
-
+    sign: ClassVar[Literal[1, -1]] = 1
+    statistics: ClassVar[Literal["fermion", "boson"]] = "fermion"
     kind: ClassVar[str] = "static fermions"
     FIELDS: ClassVar[tuple[Field, ...]] = (_Z, _ZBAR, COPIES, IRREP)
     accuracy: ClassVar[str] = "Exact polynomials in the fugacities; floats with a bound on rounding."
-
-    @property
-    def factors(self) -> tuple[Factor, ...] | None:
-        """Factors over the eigenvalues of P, if R is the fundamental or its conjugate."""
-        if not self._simple:
-            return None
-        sense = 1 if self.irrep == self.group.fundamental else -1
-        forward = Factor("fermion", self.z, self.copies, sense)
-        backward = Factor("fermion", self.zbar, self.copies, -sense)
-        return (forward, backward) if self.zbar != 0 else (forward,)
 
     @property
     def _simple(self) -> bool:
@@ -116,11 +92,23 @@ class StaticFermions(Site):
         return table.get(irrep.labels, {})
 
     def coefficient(self, irrep: Irrep) -> Expr:
-        """Exact w_c, a polynomial in z and z̄."""
-        terms = [
-            count * self.z**i * self.zbar**j for (i, j), count in self._monomials(irrep).items() if count
-        ]
-        return sympy.Add(*terms) if terms else S.Zero
+        """Exact w_c, a polynomial in z and z̄.
+
+        Raises
+        ------
+        SizeError
+            If it would have more than ten thousand terms.
+        """
+        monomials = {powers: count for powers, count in self._monomials(irrep).items() if count}
+        if len(monomials) > _MOST_TERMS:
+            raise SizeError(
+                f"The coefficient of {irrep.name} for {self.copies} copies with antiparticles has "
+                f"{len(monomials):,} terms, more than {_MOST_TERMS:,}: take fewer copies, or ask for numbers "
+                "(coefficients_at, model.spectrum), which need no polynomial."
+            )
+        z = {i: self.z**i for i in {i for i, _ in monomials}}
+        zbar = {j: self.zbar**j for j in {j for _, j in monomials}}
+        return sympy.Add(*(sympy.Mul(count, z[i], zbar[j]) for (i, j), count in monomials.items()))
 
     def support(self) -> tuple[Irrep, ...]:
         """Every irrep that occurs, in basis order."""
@@ -166,41 +154,6 @@ class StaticFermions(Site):
         z, zbar = (np.abs(value) for value in evaluate([self.z, self.zbar], values))
         power = self.copies * self.irrep.dimension
         return np.asarray((1 + z) ** power * (1 + zbar) ** power * (1 + 8 * power * _EPS))
-
-    def density_at(self, angles: NDArray[Any], values: Values) -> NDArray[Any]:
-        """∏ over the weights of R of (1 + z e^{iw·θ})^n (1 + z̄ e^{−iw·θ})^n."""
-        z, zbar = evaluate([self.z, self.zbar], values)
-        phases, multiplicities = eigenphases_of(self.irrep, angles)
-        eigenvalues = np.exp(1j * phases)
-        factors = (1 + z[..., None] * eigenvalues) * (1 + zbar[..., None] / eigenvalues)
-        return np.asarray((factors ** (self.copies * multiplicities)).prod(axis=-1))
-
-    def latex(self) -> str:
-        """Both determinants."""
-        return "W(P)=" + determinant_latex(self, "1+{}P", "1+{}P^\\dagger", self.copies)
-
-
-def determinant_latex(weight: Any, particle: str, antiparticle: str, power: int) -> str:
-    """det_R(…)^n det_R(…)^n with the fugacities in place; a fugacity of zero leaves its factor out."""
-    irrep = "" if weight.irrep == weight.group.fundamental else f"_{{{weight.irrep.latex()}}}"
-    exponent = "" if power == 1 else f"^{{{power}}}"
-    text = ""
-    for fugacity, inside in ((weight.z, particle), (weight.zbar, antiparticle)):
-        if fugacity != 0:
-            factor = sympy.latex(fugacity)
-            factor = rf"\left({factor}\right)" if fugacity.is_Add else factor
-            text += rf"\det{irrep}\left({inside.format(factor)}\right){exponent}"
-    return text or "1"
-
-
-def eigenphases_of(irrep: Irrep, angles: NDArray[Any]) -> tuple[NDArray[np.float64], NDArray[np.int_]]:
-    """Eigenphases of P in the irrep, shape (..., number of weights), and their multiplicities."""
-    phases = full_angles(irrep.group.n, angles)
-    weights = irrep.weights()
-    labels = np.array(list(weights), dtype=float)
-    # w·θ = Σ_i labels_i (θ_1 + … + θ_i), because the fundamental weight i is e_1 + … + e_i
-    partial = np.cumsum(phases[..., :-1], axis=-1)
-    return partial @ labels.T, np.array(list(weights.values()))
 
 
 def polynomial_values(

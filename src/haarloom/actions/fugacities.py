@@ -9,6 +9,7 @@ import sympy
 from sympy import Expr, Integer, S
 
 from haarloom.actions.parameters import Field, Parameter, as_parameter
+from haarloom.algebra.whole_numbers import whole_number
 from haarloom.exceptions import ParameterError
 
 __all__ = ["PHYSICAL", "fugacities", "known_inputs"]
@@ -27,7 +28,8 @@ def known_inputs(physical: Mapping[str, Any]) -> dict[str, Any]:
     unknown = sorted(set(physical) - set(PHYSICAL))
     if unknown:
         raise ParameterError(
-            f"{', '.join(unknown)} is no input of static matter; known are z, zbar, {', '.join(PHYSICAL)}."
+            f"{', '.join(unknown)} is no input of static matter; known are z, zbar, {', '.join(PHYSICAL)}: "
+            "rename it or leave it out."
         )
     return dict(physical)
 
@@ -84,19 +86,24 @@ def fugacities(
 
 def _from_mass(given: dict[str, Any], values: dict[str, Expr]) -> tuple[Expr, Expr]:
     if "n_t" in given:
-        raise ParameterError("n_t goes with kappa; with a mass give the temperature.")
+        raise ParameterError(
+            "n_t was given with a mass; it goes with kappa: leave it out and give the temperature."
+        )
     if "temperature" not in given:
-        raise ParameterError("temperature is missing: with a mass, z = exp((mu - mass)/temperature).")
+        raise ParameterError(
+            "temperature is missing: with a mass, z = exp((mu - mass)/temperature); give a number or a name, "
+            'such as temperature="T".'
+        )
     mass, mu, temperature = values["mass"], values.get("mu", S.Zero), values["temperature"]
     return sympy.exp((mu - mass) / temperature), sympy.exp(-(mu + mass) / temperature)
 
 
 def _from_hopping(given: dict[str, Any], values: dict[str, Expr]) -> tuple[Expr, Expr]:
-    from haarloom.actions.heat_kernel import positive_integer
-
     if "n_t" not in given:
-        raise ParameterError("n_t is missing: with kappa, z = (2*kappa)^n_t * exp(mu/T).")
-    sites = Integer(positive_integer("n_t", given["n_t"]))
+        raise ParameterError(
+            "n_t is missing: with kappa, z = (2*kappa)^n_t * exp(mu/T); give n_t=4 or another whole number."
+        )
+    sites = Integer(whole_number("n_t", given["n_t"], 1, "it counts the sites around the temperature circle"))
     mu = values.get("mu", S.Zero)
     ratio = mu / values["temperature"] if "temperature" in values else sites * mu
     hop = (2 * values["kappa"]) ** sites

@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from fractions import Fraction
 from functools import lru_cache
 from itertools import combinations
 
@@ -26,18 +25,29 @@ _MOST_TERMS = 400_000
 
 
 def general_linear_dimension(rows: tuple[int, ...], n: int) -> int:
-    """Dimension of the irrep of GL(n) with the given Young diagram, by hook lengths and contents.
+    """Dimension of the irrep of GL(n) with the given Young diagram, zero if there are more rows than n.
 
-    I. G. Macdonald, Symmetric Functions and Hall Polynomials, §I.3 example 4; zero if there are more rows
-    than n.
+    ∏ (n + c)/h over the boxes, c the content and h the hook length (I. G. Macdonald, Symmetric Functions and
+    Hall Polynomials, §I.3 example 4), one row at a time: in row i the n + c are λ_i consecutive numbers, and
+    ∏ h = ∏_i l_i! / ∏_{i<j} (l_i − l_j) with l_i = λ_i + N − i.
     """
-    rows = tuple(row for row in rows if row)
-    heights = [sum(1 for row in rows if row > column) for column in range(rows[0])] if rows else []
-    value = Fraction(1)
-    for i, row in enumerate(rows):
-        for j in range(row):
-            value *= Fraction(n + j - i, row - j + heights[j] - i - 1)
-    return int(value)
+    if any(rows[n:]):
+        return 0
+    return _by_hooks(rows, [math.perm(n - 1 - i + row, row) for i, row in enumerate(rows) if row])
+
+
+def transposed_dimension(rows: tuple[int, ...], n: int) -> int:
+    """Dimension of the irrep of GL(n) with the transposed Young diagram, zero if a row is longer than n.
+
+    The same formula with −c for c.
+    """
+    return _by_hooks(rows, [math.perm(n + i, row) for i, row in enumerate(rows)])
+
+
+def _by_hooks(rows: tuple[int, ...], contents: list[int]) -> int:
+    ends = [row + len(rows) - 1 - i for i, row in enumerate(rows)]
+    gaps = math.prod(one - other for one, other in combinations(ends, 2))
+    return math.prod(contents) * gaps // math.prod(map(math.factorial, ends))
 
 
 def fundamental_monomials(rows: tuple[int, ...], n: int, nbar: int) -> dict[tuple[int, int], int]:
@@ -59,19 +69,13 @@ def fundamental_monomials(rows: tuple[int, ...], n: int, nbar: int) -> dict[tupl
     found: dict[tuple[int, int], int] = {}
     for m in range(n + nbar - rows[0] + 1):
         shifted = tuple(row + m for row in rows)
-        minors = (
-            [general_linear_dimension(_transposed(shifted), n)] if nbar == 0 else _minor(shifted, n, nbar)
-        )
+        minors = [transposed_dimension(shifted, n)] if nbar == 0 else _minor(shifted, n, nbar)
         rest = size * nbar - boxes - size * m
         for power, count in enumerate(minors):
             if count:
                 key = (boxes + size * m, 0) if nbar == 0 else (power, rest + power)
                 found[key] = found.get(key, 0) + count
     return found
-
-
-def _transposed(rows: tuple[int, ...]) -> tuple[int, ...]:
-    return tuple(sum(1 for row in rows if row > column) for column in range(rows[0]))
 
 
 def _minor(rows: tuple[int, ...], n: int, nbar: int) -> list[int]:
@@ -165,8 +169,9 @@ def _multiplied(a: Series, b: Series) -> Series:
                     slot[key] = slot.get(key, 0) + count * value
         if sum(map(len, result.values())) > _MOST_TERMS:
             raise SizeError(
-                f"The exact class function of so many copies has more than {_MOST_TERMS:,} terms; "
-                "use fewer copies, an irrep of lower dimension, or fermions in the fundamental irrep, "
+                f"The exact class function of so many copies has {sum(map(len, result.values())):,} terms "
+                f"and more to come, {_MOST_TERMS:,} are allowed; use fewer copies, an irrep of "
+                "lower dimension, or fermions in the fundamental irrep, "
                 "which have closed-form coefficients."
             )
     return result

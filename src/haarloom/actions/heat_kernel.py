@@ -2,11 +2,9 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
-from operator import index
 from typing import Any, ClassVar
 
 import numpy as np
@@ -16,18 +14,17 @@ from sympy import Expr
 
 from haarloom.actions.base import Link, refuse_group
 from haarloom.actions.parameters import Field, Parameter, Values, as_parameter
-from haarloom.actions.windings import winding_sum
+from haarloom.actions.plaquette_count import PLAQUETTES, plaquette_count
+from haarloom.actions.windings import heat_kernel_at
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
 from haarloom.exceptions import ParameterError
 from haarloom.torus.angles import full_angles
-from haarloom.torus.characters import characters
+from haarloom.torus.determinant_forms import WindingGaussian
 
-__all__ = ["HeatKernel", "heat_kernel", "positive_integer"]
+__all__ = ["HeatKernel", "heat_kernel"]
 
-_MOST_CANCELLED = 20.0
 _T = Field("t", "nonnegative real", "t", "total diffusion time t = N_t τ")
-PLAQUETTES = Field("plaquettes", "positive integer", "1", "plaquettes N_t between neighbouring loops", True)
 
 
 def heat_kernel(group: SU, t: Parameter, plaquettes: int = 1) -> HeatKernel:
@@ -57,18 +54,7 @@ def heat_kernel(group: SU, t: Parameter, plaquettes: int = 1) -> HeatKernel:
     exp(-4*t/3)
     """
     refuse_group("heat_kernel", group)
-    return HeatKernel(group, as_parameter(t, _T), positive_integer("plaquettes", plaquettes))
-
-
-def positive_integer(name: str, value: Any) -> int:
-    """The value as an int ≥ 1, or a `ParameterError` that names it."""
-    try:
-        number = index(value)
-    except TypeError:
-        number = 0
-    if number < 1 or isinstance(value, bool):
-        raise ParameterError(f"{name} = {value!r} is not allowed: it must be an integer ≥ 1.")
-    return number
+    return HeatKernel(group, as_parameter(t, _T), plaquette_count(plaquettes))
 
 
 @dataclass(frozen=True)
@@ -83,6 +69,8 @@ class HeatKernel(Link):
     FIELDS: ClassVar[tuple[Field, ...]] = (_T, PLAQUETTES)
     accuracy: ClassVar[str] = "Exact exponentials; floats with a bound on rounding."
     bounds_proven: ClassVar[bool] = True
+    positive: ClassVar[bool] = True
+    monotone: ClassVar[bool] = True
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """Exact exp(−t C₂)."""
@@ -107,18 +95,15 @@ class HeatKernel(Link):
         return np.asarray(np.exp(-t * least) * (1 + 4 * np.finfo(float).eps * (1 + t * least)))
 
     def plaquette_at(self, angles: NDArray[Any], values: Values) -> NDArray[Any] | None:
-        """w(U) = Σ_r d_r exp(−τ C₂) χ_r(U) from its sum over windings, at one value of t > 0.
-
-        For τN(N² − 1)/24 > 20 windings cancel to more than nine digits; there the few characters that
-        matter are summed.
-        """
+        """w(U) = Σ_r d_r exp(−τ C₂) χ_r(U) at one t > 0; where τ is small, as a sum over windings."""
         tau = float(self._value("t", values)) / self.plaquettes
         if tau == 0:
             raise ParameterError("t = 0 makes the plaquette weight a delta function at U = 1; give t > 0.")
-        n = self.group.n
-        if tau * n * (n * n - 1) / 24 > _MOST_CANCELLED:
-            return _character_sum(self.group, angles, tau)
-        return winding_sum(n, full_angles(n, angles), tau)
+        return heat_kernel_at(self.group.n, full_angles(self.group.n, angles), tau)
+
+    def determinant_form(self, values: Values) -> WindingGaussian:
+        """The sum over windings, unrolled."""
+        return WindingGaussian(self.group, float(self._value("t", values)) / self.plaquettes)
 
     def strong_coupling(self, irrep: Irrep, order: int) -> Expr:
         """The exact k_r = q^{C₂}, q = e^{−t}: one term, so the order cuts off nothing."""
@@ -132,18 +117,6 @@ class HeatKernel(Link):
     def formula(self) -> str:
         """LaTeX of exp(−t C₂(r))."""
         return rf"e^{{-{_factor_latex(self.t)}\,C_2(r)}}"
-
-
-def _character_sum(group: SU, angles: NDArray[Any], tau: float) -> NDArray[np.float64]:
-    """Σ_r d_r e^{−τC₂} χ_r over the shells that matter at strong coupling."""
-    cutoff, last = 0, 1.0
-    while last > 1e-17:
-        cutoff += 1
-        shell = [r for r in group.irreps(cutoff) if sum(r.labels) == cutoff]
-        last = sum(r.dimension**2 * math.exp(-tau * float(r.casimir(2))) for r in shell)
-    irreps = group.irreps(cutoff)
-    weights = [r.dimension * math.exp(-tau * float(r.casimir(2))) for r in irreps]
-    return np.asarray((characters(irreps, angles) @ np.array(weights)).real)
 
 
 def _factor_latex(expression: Expr) -> str:

@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from sympy import Expr, S, Symbol
 
 from haarloom.actions.base import Link, stacked
-from haarloom.actions.bilinear import BilinearCoupling
+from haarloom.actions.bilinear import BilinearCoupling, Pair
 from haarloom.actions.loop_coupling import LoopCoupling
 from haarloom.actions.parameters import Field, Values, evaluate, free_parameters
 from haarloom.algebra.group import SU
@@ -188,10 +188,19 @@ class CoupledLink(Link):
         kernel, error = self.kernel_at(irreps, values)
         return np.diagonal(kernel, axis1=-2, axis2=-1), np.diagonal(error, axis1=-2, axis2=-1)
 
+    @property
+    def pairs(self) -> tuple[tuple[Pair, Expr], ...]:
+        """The coupling as (a, b), λ_ab of Σ λ_ab χ_a(P) χ_b(P′)*."""
+        if isinstance(self.coupling, BilinearCoupling):
+            return self.coupling.couplings
+        ends = dict.fromkeys([self.group.trivial, self.group.fundamental, self.group.antifundamental])
+        found = {r: self.coupling.coefficient(r) for r in ends}
+        return tuple(((r, r), value) for r, value in found.items() if value is not S.Zero)
+
     def _terms(self, r: Irrep, s: Irrep) -> list[tuple[Expr, int, Irrep]]:
         """(λ_ab, N_{ua}^r N_{ub}^s, u) of the finite sum over a, b and u."""
         terms = []
-        for (a, b), value in _pairs(self.coupling):
+        for (a, b), value in self.pairs:
             for labels, count in multiply(r.labels, a.conjugate.labels).items():
                 other = multiply(labels, b.labels).get(s.labels, 0)
                 if other:
@@ -231,10 +240,10 @@ class CoupledLink(Link):
         d_a d_b: proven
         where the bound of the gauge action is.
         """
-        pairs = _pairs(self.coupling)
-        reach = max(max(sum(a.labels), sum(b.labels)) for (a, b), _ in pairs)
-        sizes = np.abs(stacked(evaluate([value for _, value in pairs], values)))
-        total = (sizes * np.array([float(a.dimension * b.dimension) for (a, b), _ in pairs])).sum(axis=-1)
+        reach = self.coupling.kernel_reach
+        sizes = np.abs(stacked(evaluate([value for _, value in self.pairs], values)))
+        dimensions = np.array([float(a.dimension * b.dimension) for (a, b), _ in self.pairs])
+        total = (sizes * dimensions).sum(axis=-1)
         inner = self.gauge.largest_outside(cutoff - reach, values) if cutoff >= reach else np.ones(())
         return np.asarray(inner * total)
 
@@ -249,11 +258,3 @@ class CoupledLink(Link):
             link.latex().split(r",\qquad")[0].removeprefix("K(P,P')=") for link in (self.gauge, self.coupling)
         )
         return rf"K(P,P')=\left[{gauge}\right]\left[{coupling}\right]"
-
-
-def _pairs(coupling: BilinearCoupling | LoopCoupling) -> list[tuple[tuple[Irrep, Irrep], Expr]]:
-    if isinstance(coupling, BilinearCoupling):
-        return list(coupling.couplings)
-    group = coupling.group
-    irreps = dict.fromkeys([group.trivial, group.fundamental, group.antifundamental])
-    return [((r, r), coupling.coefficient(r)) for r in irreps if coupling.coefficient(r) is not S.Zero]

@@ -45,7 +45,7 @@ def loop_coupling(
     """
     refuse_group("loop_coupling", group)
     if form not in ("resummed", "exponential"):
-        raise ParameterError(f"form = {form!r} is not allowed: it must be 'resummed' or 'exponential'.")
+        raise ParameterError(f"form = {form!r} is not allowed: give 'resummed' or 'exponential'.")
     if form == "exponential":
         return exponential_coupling(group, lam)
     return LoopCoupling(group, as_parameter(lam, LAM))
@@ -61,6 +61,7 @@ class LoopCoupling(Link):
     kind: ClassVar[str] = "loop coupling"
     FIELDS: ClassVar[tuple[Field, ...]] = (LAM,)
     bounds_proven: ClassVar[bool] = True
+    monotone: ClassVar[bool] = True
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """1 for the trivial irrep, λ for F and F̄ (2λ for SU(2)), else 0."""
@@ -76,6 +77,16 @@ class LoopCoupling(Link):
             return np.zeros(())
         k, error = self.coefficients_at([self.group.fundamental], values)
         return np.asarray((np.abs(k) + error)[..., 0])
+
+    @property
+    def kernel_reach(self) -> int:
+        """1: the fundamental and its conjugate."""
+        return 1
+
+    def kernel_density_at(self, angles: NDArray[Any], others: NDArray[Any], values: Values) -> NDArray[Any]:
+        """K(P, P′) on two copies of the torus, all N eigenphases in each, the two broadcast."""
+        first, second = (np.exp(1j * np.asarray(phases)).sum(axis=-1) for phases in (angles, others))
+        return np.asarray(1 + 2 * self._value("lam", values) * (first * second.conj()).real)
 
     def formula(self) -> str:
         """LaTeX of the k_r."""

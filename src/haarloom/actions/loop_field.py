@@ -12,9 +12,10 @@ from numpy.typing import NDArray
 from sympy import Expr, S
 
 from haarloom.actions.base import refuse_group
+from haarloom.actions.character_factors import CharacterFactor, ExponentialFactor
 from haarloom.actions.coefficient_table import irrep_table
 from haarloom.actions.multiplicative import Factor, multiplicative_coefficients
-from haarloom.actions.parameters import Field, Parameter, Values, evaluate, exact_text
+from haarloom.actions.parameters import Field, Parameter, Values, evaluate
 from haarloom.actions.torus_site import TorusSite, summed_tail
 from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.group import SU
@@ -62,17 +63,14 @@ class LoopField(TorusSite):
     )
     bounds_proven: ClassVar[bool] = True
 
-    def _expressions(self) -> list[Expr]:
-        return [value for _, value in self.fields]
-
-    def describe(self) -> dict[str, Any]:
-        """Kind and fields by irrep name."""
-        return {"kind": self.kind, "fields": {r.name: exact_text(h) for r, h in self.fields}}
-
     @property
     def exponent(self) -> ClassFunction:
         """Σ_r h_r χ_r as a class function."""
         return ClassFunction(self.group, dict(self.fields))
+
+    def character_factors(self) -> tuple[CharacterFactor, ...]:
+        """The exponential of a finite class function."""
+        return (ExponentialFactor(self.exponent),)
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """A named coefficient; zero where no product of the fields' irreps has the N-ality of the irrep."""

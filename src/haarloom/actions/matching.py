@@ -139,7 +139,8 @@ def observable_at(
     if len(link.parameters) != 1:
         names = ", ".join(symbol.name for symbol in link.parameters) or "none"
         raise ParameterError(
-            f"Matching needs a link weight with exactly one symbol; '{link.kind}' has: {names}."
+            f"Matching needs a link weight with exactly one symbol; '{link.kind}' has: {names}. Give "
+            "numbers for all but one."
         )
     k, error = link.coefficients_at([irrep, link.group.fundamental], {link.parameters[0].name: couplings})
     k, error = np.asarray(k).real, np.asarray(error)

@@ -13,9 +13,9 @@ from sympy import Expr, Rational, S
 
 from haarloom.actions.base import refuse_group
 from haarloom.actions.coefficient_table import irrep_table
-from haarloom.actions.heat_kernel import PLAQUETTES, positive_integer
 from haarloom.actions.large_coupling import quartic_moments
-from haarloom.actions.parameters import Field, Parameter, Values, evaluate, exact_text
+from haarloom.actions.parameters import Field, Parameter, Values, evaluate
+from haarloom.actions.plaquette_count import PLAQUETTES, plaquette_count
 from haarloom.actions.plaquette_link import PlaquetteLink
 from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.group import SU
@@ -58,14 +58,15 @@ def mixed_wilson(
     for irrep, _ in table:
         if not any(irrep.labels):
             raise ParameterError(
-                "The trivial irrep only changes the normalisation, which cancels; leave it out."
+                f"couplings names {irrep.name}; the trivial irrep only changes the normalisation, which "
+                "cancels: leave it out."
             )
         if irrep.conjugate != irrep and irrep.conjugate in dict(table):
             raise ParameterError(
                 f"Re χ is the same for {irrep.name} and {irrep.conjugate.name}; list one of them, with the "
                 f"sum."
             )
-    return MixedWilson(group, table, positive_integer("plaquettes", plaquettes))
+    return MixedWilson(group, table, plaquette_count(plaquettes))
 
 
 @dataclass(frozen=True)
@@ -78,14 +79,6 @@ class MixedWilson(PlaquetteLink):
 
     kind: ClassVar[str] = "mixed Wilson"
     FIELDS: ClassVar[tuple[Field, ...]] = (_COUPLINGS, PLAQUETTES)
-
-    def _expressions(self) -> list[Expr]:
-        return [value for _, value in self.couplings]
-
-    def describe(self) -> dict[str, Any]:
-        """Kind, couplings by irrep name, and N_t."""
-        table = {r.name: exact_text(beta) for r, beta in self.couplings}
-        return {"kind": self.kind, "couplings": table, "plaquettes": self.plaquettes}
 
     def exponent(self) -> ClassFunction:
         """Σ_r β_r (χ_r + χ_r̄)/2d_r."""

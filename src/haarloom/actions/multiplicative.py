@@ -22,7 +22,7 @@ from haarloom.actions.toeplitz import difference_rows, toeplitz_complex, toeplit
 from haarloom.algebra.irrep import Irrep
 from haarloom.exceptions import ConvergenceError
 
-__all__ = ["Factor", "multiplicative_coefficients"]
+__all__ = ["Factor", "eigenvalue_factor", "multiplicative_coefficients"]
 
 _BITS = 224  # of the fixed-point numbers that hold φ
 _MOST_ORDERS = 3000
@@ -99,6 +99,23 @@ def multiplicative_coefficients(
     w = np.array([w for w, _ in results]).reshape((*shape, len(irreps)))
     error = np.array([error for _, error in results]).reshape((*shape, len(irreps)))
     return w, error
+
+
+def eigenvalue_factor(
+    factors: Sequence[Factor], phases: NDArray[np.float64], values: Values
+) -> NDArray[np.complex128]:
+    """φ(e^{iθ}) at one point of parameter space, from the closed forms of its factors."""
+    result = np.ones(np.shape(phases), dtype=np.complex128)
+    arguments = evaluate([factor.argument for factor in factors], values)
+    for factor, argument in zip(factors, arguments, strict=True):
+        inner = argument * np.exp(1j * factor.direction * phases)
+        if factor.form == "field":
+            result *= np.exp(inner)
+        else:
+            result *= (
+                (1 + inner) ** factor.copies if factor.form == "fermion" else (1 - inner) ** -factor.copies
+            )
+    return result
 
 
 def _one_point(

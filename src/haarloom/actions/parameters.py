@@ -19,7 +19,7 @@ import sympy
 from numpy.typing import ArrayLike, NDArray
 from sympy import Expr, Symbol
 
-from haarloom.exceptions import MissingValueError, ParameterError
+from haarloom.exceptions import ExpressionError, MissingValueError, ParameterError
 
 __all__ = [
     "DOMAINS",
@@ -163,7 +163,7 @@ def _exact_number(value: int | float | complex | Expr, field: Field) -> Expr:
     if isinstance(value, float):
         if not math.isfinite(value):
             raise ParameterError(
-                f"{field.name} = {value} is not allowed: {field.name} must be a finite number."
+                f"{field.name} = {value} is not allowed: give a finite number, or a symbol to fix it later."
             )
         return sympy.Rational(repr(value))
     return sympy.sympify(value)
@@ -171,7 +171,9 @@ def _exact_number(value: int | float | complex | Expr, field: Field) -> Expr:
 
 def _from_text(text: str, field: Field) -> Expr:
     if text in _NO_NUMBERS:
-        raise ParameterError(f"{field.name} = {text} is not allowed: {field.name} must be a finite number.")
+        raise ParameterError(
+            f"{field.name} = {text} is not allowed: give a finite number, or a symbol to fix it later."
+        )
     if _NAME.match(text) and text not in _CONSTANTS:
         return Symbol(text)
     if _NUMBER.match(text):
@@ -182,7 +184,10 @@ def _from_text(text: str, field: Field) -> Expr:
     # the grammar for whole expressions lives with the documents, a later station: loaded on use
     from haarloom.documents.expressions import parse_expression
 
-    return parse_expression(text)
+    try:
+        return parse_expression(text)
+    except ExpressionError as problem:
+        raise ExpressionError(f"{field.name} = {text!r}: {problem}") from None
 
 
 def free_parameters(expressions: Iterable[Expr]) -> tuple[Symbol, ...]:

@@ -10,7 +10,6 @@ import numpy as np
 from numpy.typing import NDArray
 from sympy import Expr, S
 
-from haarloom.actions.alcove_gauss import alcove_nodes
 from haarloom.actions.base import Link
 from haarloom.actions.named_coefficient import NamedCoefficient
 from haarloom.actions.parameters import Values
@@ -19,6 +18,7 @@ from haarloom.actions.torus_site import Point, each_point
 from haarloom.actions.wilson import power_of
 from haarloom.algebra.irrep import Irrep
 from haarloom.exceptions import ConvergenceError
+from haarloom.torus.alcove_gauss import alcove_nodes
 from haarloom.torus.characters import characters
 
 __all__ = ["PlaquetteLink"]

@@ -11,9 +11,11 @@ from numpy.typing import NDArray
 from sympy import Expr
 
 from haarloom.actions.base import refuse_group
+from haarloom.actions.character_factors import CharacterFactor, ExponentialFactor, FiniteFactor
 from haarloom.actions.parameters import Field, Parameter, Values, as_parameter
-from haarloom.actions.reduced_measure import reduced_measure_at
+from haarloom.actions.reduced_measure import haar_power, reduced_measure_at
 from haarloom.actions.torus_site import TorusSite
+from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.group import SU
 from haarloom.exceptions import ParameterError
 from haarloom.torus.angles import full_angles
@@ -96,6 +98,11 @@ def _refuse_pole(b: float) -> None:
     )
 
 
+def _modulus_squared(group: SU) -> ClassFunction:
+    """|ℓ|² = (1 + χ_adjoint)/N²."""
+    return group.loop * group.loop.conjugate(real=True) / group.n**2
+
+
 @dataclass(frozen=True)
 class PolynomialPotential(TorusSite):
     """exp(−v U/T⁴) with a polynomial U; see `polynomial_potential`."""
@@ -117,6 +124,14 @@ class PolynomialPotential(TorusSite):
         b2, b3, b4, volume = (self._value(name, values) for name in ("b2", "b3", "b4", "volume"))
         potential = -b2 / 2 * size - b3 / 3 * (loop**n).real + b4 / 4 * size**2
         return np.asarray(np.exp(-volume * potential))
+
+    def character_factors(self) -> tuple[CharacterFactor, ...]:
+        """The exponential of a polynomial in loops."""
+        size, n = _modulus_squared(self.group), self.group.n
+        loop = self.group.loop / n
+        powers = loop**n + loop.conjugate(real=True) ** n
+        exponent = size * (self.b2 / 2) + powers * (self.b3 / 6) - size * size * (self.b4 / 4)
+        return (ExponentialFactor(exponent * self.volume),)
 
     def norm_bound(self, values: Values) -> NDArray[Any]:
         """exp of v(|b₂|/2 + |b₃|/3 + |b₄|/4): proven, since |ℓ| ≤ 1."""
@@ -142,6 +157,10 @@ class LogarithmicPotential(TorusSite):
     volume: Expr
 
     kind: ClassVar[str] = "logarithmic potential"
+    unproven: ClassVar[str] = (
+        "H^(−v b) is creased where eigenphases meet, its characters fall by a power only, unless −v b is a "
+        "whole number up to 8 and N ≤ 5;"
+    )
     FIELDS: ClassVar[tuple[Field, ...]] = (_A, _B, _V)
 
     def density_at(self, angles: NDArray[Any], values: Values) -> NDArray[Any]:
@@ -154,6 +173,14 @@ class LogarithmicPotential(TorusSite):
         return np.asarray(
             np.exp(volume * a / 2 * np.abs(loop) ** 2) * reduced_measure_at(n, angles) ** (-volume * b)
         )
+
+    def character_factors(self) -> tuple[CharacterFactor, ...]:
+        """An exponential and a power of H, where that is a small whole number."""
+        power = haar_power(self.group, -self.volume * self.b)
+        if not power.finite:
+            return super().character_factors()
+        exponent = _modulus_squared(self.group) * (self.volume * self.a / 2)
+        return (FiniteFactor(power.class_function()), ExponentialFactor(exponent))
 
     def norm_bound(self, values: Values) -> NDArray[Any]:
         """exp(v |a|/2): proven, since |ℓ| ≤ 1 and H ≤ 1."""

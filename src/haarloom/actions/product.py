@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from sympy import Expr, S
 
 from haarloom.actions.base import Site
+from haarloom.actions.character_factors import CharacterFactor, merged_factors
 from haarloom.actions.multiplicative import Factor, multiplicative_coefficients
 from haarloom.actions.named_coefficient import NamedCoefficient
 from haarloom.actions.parameters import Field, Values, free_parameters
@@ -89,6 +90,10 @@ class SiteProduct(TorusSite):
         for site in self.sites[1:]:
             result = result * site.class_function()
         return result
+
+    def character_factors(self) -> tuple[CharacterFactor, ...]:
+        """Those of all factors; finite ones are multiplied out."""
+        return merged_factors([factor for site in self.sites for factor in site.character_factors()])
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """Exact w_c; with one infinite factor a finite sum over it, with more a named coefficient."""

@@ -13,6 +13,7 @@ import sympy
 from numpy.typing import NDArray
 from sympy import Expr, Symbol
 
+from haarloom.actions.character_factors import CharacterFactor
 from haarloom.actions.parameters import Values
 from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.group import SU
@@ -113,6 +114,9 @@ class SiteWeight(Weight, Protocol):
 
     def tail_bound(self, cutoff: int, values: Values) -> NDArray[Any]:
         """Bound or estimate of Σ |w_c| d_c over irreps whose labels sum to more than the cutoff."""
+
+    def character_factors(self) -> tuple[CharacterFactor, ...]:
+        """Exact factors of W for proofs; raises `ConvergenceError` with the reason where there are none."""
 
     def density_at(self, angles: NDArray[Any], values: Values) -> NDArray[Any]:
         """W on the maximal torus from its closed form, never via the w_c; values are scalars."""

@@ -55,6 +55,10 @@ class HaarPower(TorusSite):
     power: Expr
 
     kind: ClassVar[str] = "Haar power"
+    unproven: ClassVar[str] = (
+        "H^p is creased where eigenphases meet, its characters fall by a power only, unless p is a whole "
+        "number up to 8 and N ≤ 5;"
+    )
     FIELDS: ClassVar[tuple[Field, ...]] = (_POWER,)
 
     @property

@@ -125,6 +125,7 @@ def build(group: SU, description: Mapping[str, Any]) -> Any:
         raise DocumentError(
             f"A weight of kind {kind!r} has the fields {', '.join(sorted(known))}; "
             f"missing: {', '.join(sorted(missing)) or 'none'}; unknown: "
-            f"{', '.join(sorted(set(fields) - known)) or 'none'}."
+            f"{', '.join(sorted(set(fields) - known)) or 'none'}. Give each "
+            "known field once."
         )
     return entry.constructor(group, **fields)

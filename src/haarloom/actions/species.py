@@ -72,14 +72,17 @@ def static_species(
     """
     refuse_group("static_species", group)
     if not species or not all(isinstance(one, Species) for one in species):
-        raise ParameterError('species: give a list of Species, for instance [Species("m", "mu", copies=2)].')
+        raise ParameterError(
+            f"species = {species!r}: at least one Species is needed and nothing else; give a list such as "
+            '[Species("m", "mu", copies=2)].'
+        )
     splitting = as_parameter(isospin_mu, _SPLITTING)
     factors = []
     for one in species:
         constructors = {"fermions": static_fermions, "bosons": static_bosons}
         if one.statistics not in constructors:
             raise ParameterError(
-                f"statistics = {one.statistics!r} is not allowed: it must be 'fermions' or 'bosons'."
+                f"statistics = {one.statistics!r} is not allowed: give 'fermions' or 'bosons'."
             )
         mu = as_parameter(one.mu, PHYSICAL["mu"]) + as_parameter(one.isospin, _ISOSPIN) * splitting
         build = constructors[one.statistics]

@@ -59,7 +59,9 @@ class WeightAnalysis:
         for statement in self.statements:
             if statement.name == name:
                 return statement
-        raise KeyError(f"{name!r}: known are {', '.join(s.name for s in self.statements)}")
+        raise KeyError(
+            f"{name!r} is no statement; ask for one of {', '.join(s.name for s in self.statements)}"
+        )
 
     def __repr__(self) -> str:
         given = ", ".join(f"{name} = {value:g}" for name, value in self.values.items())

@@ -11,12 +11,13 @@ from numpy.typing import NDArray
 from sympy import Expr
 
 from haarloom.actions.base import Site
-from haarloom.actions.multiplicative import multiplicative_coefficients
+from haarloom.actions.multiplicative import eigenvalue_factor, multiplicative_coefficients
 from haarloom.actions.multiplicative_digits import digits_of
 from haarloom.actions.named_coefficient import NamedCoefficient
 from haarloom.actions.parameters import Values, evaluate
 from haarloom.actions.torus_coefficients import sampled_function
 from haarloom.algebra.irrep import Irrep
+from haarloom.torus.determinant_forms import EigenvalueProduct
 
 __all__ = ["Point", "TorusSite", "each_point", "summed_tail"]
 
@@ -93,6 +94,13 @@ class TorusSite(Site):
         """w_c to any number of digits where W is a product over eigenvalues at real parameters, else None."""
         factors = getattr(self, "factors", None)
         return digits_of(factors, irrep, values, digits) if factors else None
+
+    def determinant_form(self, values: Values) -> EigenvalueProduct | None:
+        """W as a product over eigenvalues, where it is one."""
+        factors = getattr(self, "factors", None)
+        if not factors:
+            return None
+        return EigenvalueProduct(self.group, lambda phases: eigenvalue_factor(factors, phases, values))
 
     def norm_bound(self, values: Values) -> NDArray[Any]:
         """Largest |W| on a grid of the torus, a quarter added: an *estimate* of the supremum."""

@@ -15,14 +15,15 @@ from sympy import Expr, S
 from sympy.core.function import ArgumentIndexError
 
 from haarloom.actions.base import Link, refuse_group
-from haarloom.actions.heat_kernel import PLAQUETTES, positive_integer
 from haarloom.actions.parameters import Field, Parameter, Values, as_parameter
+from haarloom.actions.plaquette_count import PLAQUETTES, plaquette_count
 from haarloom.actions.wilson_kernel import wilson_floats, wilson_fraction, wilson_shell_bound
 from haarloom.algebra.class_function import ClassFunction
 from haarloom.algebra.group import SU
 from haarloom.algebra.irrep import Irrep
 from haarloom.algebra.products import multiply
 from haarloom.torus.angles import full_angles
+from haarloom.torus.determinant_forms import EigenvalueProduct
 
 __all__ = ["Wilson", "WilsonCoefficient", "power_of", "wilson"]
 
@@ -57,7 +58,7 @@ def wilson(group: SU, beta: Parameter, plaquettes: int = 1) -> Wilson:
     besseli(2, beta)/besseli(1, beta)
     """
     refuse_group("wilson", group)
-    return Wilson(group, as_parameter(beta, _BETA), positive_integer("plaquettes", plaquettes))
+    return Wilson(group, as_parameter(beta, _BETA), plaquette_count(plaquettes))
 
 
 class WilsonCoefficient(sympy.Function):
@@ -148,6 +149,7 @@ class Wilson(Link):
         "Exact Bessel determinants: floats with a proven error, any number of digits on request."
     )
     bounds_proven: ClassVar[bool] = True
+    positive: ClassVar[bool] = True
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """Exact k_r, a power of a `WilsonCoefficient` (for SU(2), of a quotient of Bessel functions)."""
@@ -188,6 +190,11 @@ class Wilson(Link):
         beta = self._value("beta", values)
         phases = full_angles(self.group.n, angles)
         return np.asarray(np.exp(beta / self.group.n * np.cos(phases).sum(axis=-1)))
+
+    def determinant_form(self, values: Values) -> EigenvalueProduct:
+        """∏_j exp[(β/N) cos θ_j]."""
+        x = float(self._value("beta", values)) / self.group.n
+        return EigenvalueProduct(self.group, lambda phases: np.exp(x * np.cos(phases)))
 
     def exponent(self) -> ClassFunction:
         """(β/2N)(χ_F + χ_F̄)."""

@@ -1,4 +1,4 @@
-"""The heat kernel of SU(N) on the torus of eigenphases as a sum over windings of geodesics."""
+"""The heat kernel of SU(N) on the torus of eigenphases: a sum over windings, at large τ over characters."""
 
 from __future__ import annotations
 
@@ -10,24 +10,27 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["shortest_phases", "winding_sum", "winding_vectors"]
+__all__ = ["heat_kernel_at", "shortest_phases", "winding_vectors"]
 
 _FEW = 3000  # windings summed one by one; more go through determinants
-_DIRECT_PIECE, _DETERMINANT_PIECE = 4096, 256  # angles at a time
+_DIRECT_PIECE, _DETERMINANT_PIECE, _CHARACTER_PIECE = 4096, 256, 32  # angles at a time
 _NEGLIGIBLE = 80.0  # e^{−40} against the leading geodesic
+_MOST_CANCELLED = 20.0  # windings cancel to e^{−20} of their size at most
 
 Floats = NDArray[np.float64]
 
 
-def winding_sum(n: int, phases: Floats, tau: float) -> Floats:
-    """Heat kernel Σ_r d_r e^{−τC₂(r)} χ_r of SU(N) by Poisson summation.
+def heat_kernel_at(n: int, phases: Floats, tau: float) -> Floats:
+    """Heat kernel Σ_r d_r e^{−τC₂(r)} χ_r of SU(N), by Poisson summation where that is the faster sum.
 
     With θ^m = θ + 2πm, Σ m_j = 0,
 
         w = √N (2π/τ)^{(N−1)/2} τ^{−N(N−1)/2} e^{τN(N²−1)/24} / ∏_{k<N} k!
             · Σ_m ∏_{i<j} (θ_i^m − θ_j^m) / (2 sin((θ_i − θ_j)/2)) · exp(−Σ_j (θ_j^m)²/2τ).
 
-    The signs (−1)^{m_i − m_j} of the shifted sines multiply to (−1)^{(N−1) Σ m} = 1 for every N.
+    The signs (−1)^{m_i − m_j} of the shifted sines multiply to (−1)^{(N−1) Σ m} = 1 for every N. For
+    τN(N² − 1)/24 > 20 windings cancel to more than nine digits; there the few characters that matter are
+    summed.
 
     Parameters
     ----------
@@ -42,20 +45,26 @@ def winding_sum(n: int, phases: Floats, tau: float) -> Floats:
     P. Menotti, E. Onofri, Nucl. Phys. B 190 (1981) 288; J. S. Dowker, Ann. Phys. 62 (1971) 361.
     """
     flat = shortest_phases(np.asarray(phases, dtype=float).reshape(-1, n))
-    length = float(np.sqrt((flat**2).sum(axis=1)).max(initial=0.0))
-    radius = (length + sqrt(length**2 + _NEGLIGIBLE * tau)) / (2 * np.pi)
-    windings = winding_vectors(n, ceil(radius**2), _FEW)
-    if windings is None:
-        numerator, step = _by_determinants(tau, ceil(radius)), _DETERMINANT_PIECE
-    else:
-        numerator, step = _one_by_one(tau, windings), _DIRECT_PIECE
+    numerator, step = _numerator(n, flat, tau)
 
     def kernel(theta: NDArray[Any]) -> NDArray[Any]:
-        return np.asarray(_constant(n, tau) * numerator(theta) / _product(2 * np.sin(_gaps(theta) / 2)))
+        return np.asarray(numerator(theta) / _product(2 * np.sin(_gaps(theta) / 2)))
 
     starts = range(0, len(flat), step)
     pieces = [_with_limits(kernel, flat[start : start + step], tau) for start in starts]
     return np.concatenate([np.empty(0), *pieces]).reshape(np.shape(phases)[:-1])
+
+
+def _numerator(n: int, flat: Floats, tau: float) -> tuple[Callable[[NDArray[Any]], NDArray[Any]], int]:
+    """w ∏_{i<j} 2 sin((θ_i − θ_j)/2) by the sum that suits, and how many angles to take at a time."""
+    if tau * n * (n * n - 1) / 24 > _MOST_CANCELLED:
+        return _by_characters(n, tau), _CHARACTER_PIECE
+    length = float(np.sqrt((flat**2).sum(axis=1)).max(initial=0.0))
+    radius = (length + sqrt(length**2 + _NEGLIGIBLE * tau)) / (2 * np.pi)
+    windings = winding_vectors(n, ceil(radius**2), _FEW)
+    if windings is None:
+        return _by_determinants(n, tau, ceil(radius)), _DETERMINANT_PIECE
+    return _one_by_one(n, tau, windings), _DIRECT_PIECE
 
 
 def shortest_phases(phases: Floats) -> Floats:
@@ -101,18 +110,18 @@ def _constant(n: int, tau: float) -> float:
     return float(volume * np.exp(tau * n * (n * n - 1) / 24) / prod(factorial(k) for k in range(n)))
 
 
-def _one_by_one(tau: float, windings: NDArray[np.int_]) -> Callable[[NDArray[Any]], NDArray[Any]]:
+def _one_by_one(n: int, tau: float, windings: NDArray[np.int_]) -> Callable[[NDArray[Any]], NDArray[Any]]:
     def numerator(theta: NDArray[Any]) -> NDArray[Any]:
         total = np.zeros(theta.shape[:-1], dtype=theta.dtype)
         for winding in windings:
             moved = theta + 2 * np.pi * winding
             total += _product(_gaps(moved)) * np.exp(-(moved**2).sum(axis=-1) / (2 * tau))
-        return total
+        return _constant(n, tau) * total
 
     return numerator
 
 
-def _by_determinants(tau: float, most: int) -> Callable[[NDArray[Any]], NDArray[Any]]:
+def _by_determinants(n: int, tau: float, most: int) -> Callable[[NDArray[Any]], NDArray[Any]]:
     """The same sum for many windings.
 
     The product over i < j is a Vandermonde determinant, so for a fixed phase φ conjugate to Σ m the sum
@@ -120,16 +129,53 @@ def _by_determinants(tau: float, most: int) -> Callable[[NDArray[Any]], NDArray[
     """
 
     def numerator(theta: NDArray[Any]) -> NDArray[Any]:
-        n = theta.shape[-1]
         turns = np.arange(-most - 1, most + 2)
         moved = theta[..., None] + 2 * np.pi * turns
         gauss = np.exp(-(moved**2) / (2 * tau))
         powers = np.stack([gauss * moved**k for k in range(n - 1, -1, -1)], axis=-2)
         nodes = n * len(turns)
         fourier = np.exp(2j * np.pi * np.outer(turns, np.arange(nodes)) / nodes)
-        return np.asarray(np.linalg.det(np.moveaxis(powers @ fourier, -1, -3)).mean(axis=-1))
+        summed = np.moveaxis(powers @ fourier, -1, -3)
+        return _constant(n, tau) * np.asarray(np.linalg.det(summed).mean(axis=-1))
 
     return numerator
+
+
+def _by_characters(n: int, tau: float) -> Callable[[NDArray[Any]], NDArray[Any]]:
+    """Σ_r d_r e^{−τC₂(r)} det e^{i l_k θ_j}, divided by (−i)^{N(N−1)/2}; l = λ + ρ, ρ centred.
+
+    d_r = det L_p(l_k) with L_p Lagrange's polynomials on the points ρ, so that by Cauchy and Binet's formula
+    the sum over l is one N×N determinant of one-dimensional sums, dominated by l = ρ without cancellation.
+    Each r is met once where Σ l is one of N consecutive numbers S; a finite Fourier sum picks S, and
+    τC₂ = ½τ (Σ l² − S²/N − Σ ρ²).
+    """
+    rho: Floats = np.arange(n, dtype=float) - (n - 1) / 2
+    far = ceil(rho[-1] + 3 + sqrt(90 / tau))
+    exponents = np.arange(-far, far + 1) + (n - 1) % 2 / 2
+    basis = _lagrange(rho, exponents) * np.exp(-tau / 2 * (exponents[:, None] ** 2 - rho**2))
+    nodes = 2 * n * (far + 1)
+    phi = 2 * np.pi * np.arange(nodes) / nodes
+    sums = np.arange(-((n - 1) // 2), n // 2 + 1)
+    # beyond e^{−45} the least irrep of that N-ality, k boxes in a column, leaves nothing
+    sums = sums[tau * np.abs(sums) * (n - np.abs(sums)) * (n + 1) / (2 * n) < 45]
+    picked = (np.exp(-1j * np.outer(phi, sums)) @ np.exp(tau * sums**2 / (2 * n))) / nodes
+    turned = basis[:, :, None] * np.exp(1j * np.outer(exponents, phi))[:, None, :]
+
+    def numerator(theta: NDArray[Any]) -> NDArray[Any]:
+        waves = np.exp(1j * theta[..., None] * exponents)
+        entries = np.einsum("...jl,lpf->...fjp", waves, turned, optimize=True)
+        return np.asarray(np.linalg.det(entries) @ picked / (-1j) ** (n * (n - 1) // 2 % 4))
+
+    return numerator
+
+
+def _lagrange(points: Floats, places: Floats) -> Floats:
+    """The polynomials that are 1 at one of the points and 0 at the others, shape (places, points)."""
+    others = [np.delete(points, p) for p in range(len(points))]
+    ratios = [
+        (places[:, None] - other) / (point - other) for point, other in zip(points, others, strict=True)
+    ]
+    return np.stack([ratio.prod(axis=1) for ratio in ratios], axis=1)
 
 
 def _with_limits(kernel: Callable[[NDArray[Any]], NDArray[Any]], phases: Floats, tau: float) -> Floats:

@@ -11,9 +11,10 @@ from numpy.typing import NDArray
 from sympy import Expr, Symbol
 
 from haarloom.actions.base import Site, refuse_group
+from haarloom.actions.character_factors import CharacterFactor, written_factors
 from haarloom.actions.class_expression import ClassExpression, class_expression
-from haarloom.actions.heat_kernel import PLAQUETTES, positive_integer
 from haarloom.actions.parameters import Field, Values
+from haarloom.actions.plaquette_count import PLAQUETTES, plaquette_count
 from haarloom.actions.plaquette_link import PlaquetteLink
 from haarloom.actions.singularities import refuse_singularities
 from haarloom.actions.torus_site import TorusSite, each_point
@@ -55,9 +56,7 @@ def link_from_plaquette(
         If it is no class function, or if ∫dU w(U) vanishes identically.
     """
     refuse_group("link_from_plaquette", group)
-    written = WrittenPlaquette(
-        group, class_expression(group, weight), positive_integer("plaquettes", plaquettes)
-    )
+    written = WrittenPlaquette(group, class_expression(group, weight), plaquette_count(plaquettes))
     finite = written.weight.finite
     if finite is not None and finite.haar() == 0:
         raise ClassFunctionError(
@@ -115,6 +114,10 @@ class WrittenPlaquette(PlaquetteLink):
         """The argument of the exponential, if the weight is one with a finite class function inside."""
         inside = self.weight.expression
         return self.weight.part(inside.args[0]).finite if isinstance(inside, sympy.exp) else None
+
+    def plaquette_factors(self) -> tuple[CharacterFactor, ...] | None:
+        """Polynomials and exponentials of polynomials whose product is w(U), if it is one."""
+        return written_factors(self.weight)
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """Exact (w_r/w_0)^{N_t} of a finite class function, else a named coefficient."""
@@ -174,6 +177,10 @@ class WrittenSite(TorusSite):
     def class_function(self) -> ClassFunction:
         """The exact class function, if finite."""
         return self.expression.finite or super().class_function()
+
+    def character_factors(self) -> tuple[CharacterFactor, ...]:
+        """Polynomials and exponentials of polynomials whose product is W, if it is one."""
+        return written_factors(self.expression) or super().character_factors()
 
     def coefficient(self, irrep: Irrep) -> Expr:
         """Exact w_c of a finite class function, else a named coefficient."""

@@ -5,7 +5,7 @@ F. Johansson, *IEEE Trans. Comput.* 66 (2017) 1281. Inputs enter as exact ration
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
 from fractions import Fraction
@@ -18,7 +18,16 @@ import sympy
 
 from haarloom.exceptions import ConvergenceError, ParameterError
 
-__all__ = ["Interval", "as_exact", "ball", "exact_text", "expression_ball", "precision"]
+__all__ = [
+    "Interval",
+    "as_exact",
+    "ball",
+    "coefficient_balls",
+    "exact_text",
+    "expression_ball",
+    "precision",
+    "upper_float",
+]
 
 
 @dataclass(frozen=True)
@@ -139,6 +148,23 @@ def ball(value: Fraction | Interval | sympy.Expr) -> Any:
 
 def _rational(value: Fraction) -> Any:
     return flint.arb(flint.fmpq(value.numerator, value.denominator))
+
+
+def upper_float(number: Any) -> float:
+    """A float above the absolute value of a ball."""
+    # the summand keeps numbers below the range of floats from vanishing
+    return float(abs(number).upper()) * (1 + 2.0**-50) + 1e-290
+
+
+def coefficient_balls(expressions: Sequence[sympy.Expr], values: Mapping[str, Any]) -> list[Any]:
+    """Balls that contain exact coefficients; rational values enter the expressions as they are."""
+    exact = {
+        sympy.Symbol(name): sympy.Rational(value.numerator, value.denominator)
+        for name, value in values.items()
+        if isinstance(value, Fraction)
+    }
+    numbers = {name: ball(value) for name, value in values.items()}
+    return [expression_ball(expression.xreplace(exact), numbers) for expression in expressions]
 
 
 def expression_ball(expression: sympy.Expr, values: Mapping[str, Any]) -> Any:

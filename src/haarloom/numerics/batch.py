@@ -177,10 +177,6 @@ class LevelSet:
         Norms of the vectors, shape (M, m); their product is the condition number.
     upwards, downwards
         ‖C x‖ and ‖yᵀ B‖, shape (M, m).
-    residual
-        ‖T x − λ x‖, shape (M, m), where the levels come from a projection; else 0.
-    rest
-        Estimated largest |λ| of the levels left out, shape (M,); None where all are there.
     """
 
     values: NDArray[Any]
@@ -188,8 +184,6 @@ class LevelSet:
     left: NDArray[np.float64]
     upwards: NDArray[np.float64]
     downwards: NDArray[np.float64]
-    residual: NDArray[np.float64] | float = 0.0
-    rest: NDArray[np.float64] | None = None
 
 
 def complete_levels(
@@ -206,15 +200,14 @@ def complete_levels(
 def batch_errors(batch: TruncationBatch, found: LevelSet, levels: int) -> NDArray[np.float64]:
     """Radius around each leading eigenvalue that holds one of the untruncated T, shape (M, levels).
 
-    Infinite where the bound does not close. Levels left out enter as in
-    :mod:`haarloom.numerics.bounds`, as one block with the norms of the whole rim.
+    Infinite where the bound does not close.
     """
     terms = _Terms.of(batch, found)
     radius = np.full((len(found.values), levels), np.inf)
     for level in range(levels):
         centre = found.values[:, level]
         room = np.abs(centre) - batch.norm * batch.outside
-        distance = terms.distances(found, centre)
+        distance = np.abs(found.values - centre[:, None])
         trial = np.zeros(len(centre))
         for growth in (0.0, 1.0, 1.02, 2.0, 8.0, 64.0):
             trial, load = terms.load(trial, growth, room, distance, level)
@@ -239,24 +232,7 @@ class _Terms:
         noise = batch.noise[:, None]
         up, down = found.upwards**2, found.downwards**2
         fixed = [found.right**2 * noise, found.left**2 * noise]
-        if found.rest is None:
-            return cls(up, down, fixed[0], fixed[1])
-        # a residual couples a level to those left out, like B and C couple it to what was cut off
-        with np.errstate(divide="ignore"):
-            gain = 1 / np.maximum(np.abs(found.values) - found.rest[:, None], 0.0)
-        loose = np.square(found.residual) * gain
-        fixed = [fixed[0] + loose, fixed[1] + loose * (found.left / found.right) ** 2]
-        projector = 1 + np.sqrt(((found.left * found.right) ** 2).sum(axis=1, keepdims=True))
-        rim = batch.rim[:, None] ** 2
-        columns = ((up, rim), (down, rim * projector**2), (fixed[0], noise), (fixed[1], noise * projector**2))
-        return cls(*(np.concatenate(pair, axis=1) for pair in columns))
-
-    @staticmethod
-    def distances(found: LevelSet, centre: NDArray[Any]) -> NDArray[np.float64]:
-        apart = np.abs(found.values - centre[:, None])
-        if found.rest is None:
-            return apart
-        return np.concatenate([apart, np.maximum(np.abs(centre) - found.rest, 0.0)[:, None]], axis=1)
+        return cls(up, down, fixed[0], fixed[1])
 
     def strength(self, margin: NDArray[np.float64]) -> NDArray[np.float64]:
         gain = np.where(margin > 0, 1 / margin, np.inf)[:, None]

@@ -24,7 +24,10 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["BorderedPoint", "bordered_point"]
+__all__ = ["BorderedPoint", "Borders", "bordered_point", "unit"]
+
+Borders = tuple[NDArray[Any], NDArray[Any]]
+"""(b, c), close to the left and to the right vector of the level."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -69,7 +72,7 @@ def bordered_point(
     matrix: NDArray[Any],
     slopes: Sequence[NDArray[Any]],
     level: Any,
-    borders: tuple[NDArray[Any], NDArray[Any]],
+    borders: Borders,
 ) -> BorderedPoint:
     """Evaluate the bordered system in floating point.
 
@@ -107,3 +110,8 @@ def bordered_point(
     second = [dual @ x + w @ direct for dual, direct in zip(dual_change, change, strict=True)]
     first = np.array([w @ force for force in forces[1:]])
     return BorderedPoint(g, w @ x, second[0], first, np.array(second[1:]), x, w)
+
+
+def unit(vector: NDArray[Any]) -> NDArray[Any]:
+    """A vector of norm 1."""
+    return np.asarray(vector / np.linalg.norm(vector))

@@ -2,22 +2,23 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from haarloom.algebra.labels import count_up_to
-from haarloom.exceptions import ConvergenceError, ParameterError
-from haarloom.numerics.continuation import Chart, State, corrected, traced
+from haarloom.algebra.whole_numbers import whole_number
+from haarloom.exceptions import ParameterError
+from haarloom.numerics.bordered import unit
+from haarloom.numerics.continuation import Chart, Path, State, corrected, passes, tangent_at, traced
 from haarloom.numerics.cutoff import checked_levels
-from haarloom.numerics.exceptional import exceptional_points
-from haarloom.numerics.mergers import FloatMerger, MatrixFamily, sufficient_cutoff
+from haarloom.numerics.mergers import SAMPLES, FloatMerger, MatrixFamily, mergers_on, sufficient_cutoff
 from haarloom.numerics.parameters import checked_values, parameter_names, plain_numbers
 from haarloom.numerics.threads import single_threaded
 from haarloom.numerics.truncation import truncate
+from haarloom.numerics.turning_points import CUSP, with_turns
 
 if TYPE_CHECKING:
     from haarloom.ring.model import RingModel
@@ -34,17 +35,22 @@ class BoundaryCurve:
     points
         (x, y) along the curve, shape (M, 2).
     eigenvalue, mass
-        λ* of the merging pair and −ln(λ*/λ_0), shape (M,).
+        λ* of the merging pair and −ln|λ*/λ_0|, shape (M,).
     level
         Position of the pair among the masses at each point, shape (M,), 1 for the two lowest.
     error
-        Estimated distance to the boundary of the untruncated T, in units of the box, shape (M,).
+        Estimated distance across the curve to that of the untruncated T, in units of the box, shape (M,).
     folds
-        Indices of points where x or y turns round.
+        For each axis the indices of the points at which it turns round, located to full precision: the
+        turning parameter to that of ``points``, the other one to about its square root.
     cusps
-        Indices of points next to which three levels meet.
+        Indices of the points at which three levels meet and the curve has a tip, located like them.
     closed
-        Whether the curve ends where it began.
+        Whether the curve ends where it began; then the first point is the last one, too.
+    complete
+        Whether it is closed or ends on the edge of the box at both ends. Otherwise it was given up after
+        ``most_points``, or where it is no smooth curve any more: where a level vanishes, or levels meet
+        with vectors of their own, as all of equal Casimir do in a corner z = z̄ = 0.
     """
 
     points: NDArray[np.float64]
@@ -52,9 +58,10 @@ class BoundaryCurve:
     mass: NDArray[np.float64]
     level: NDArray[np.int64]
     error: NDArray[np.float64]
-    folds: tuple[int, ...]
+    folds: tuple[tuple[int, ...], tuple[int, ...]]
     cusps: tuple[int, ...]
     closed: bool
+    complete: bool
 
 
 @dataclass(frozen=True, eq=False)
@@ -69,6 +76,9 @@ class ComplexBoundary:
         ((x from, x to), (y from, y to)).
     curves
         One for each connected piece that was found.
+    unsettled
+        Points (x, y) near which levels merge according to the lines across the box, and which lie on no
+        curve because Newton's method did not settle.
     cutoff
         Basis that was used.
     fixed
@@ -78,13 +88,16 @@ class ComplexBoundary:
     axes: tuple[str, str]
     box: tuple[tuple[float, float], tuple[float, float]]
     curves: tuple[BoundaryCurve, ...]
+    unsettled: tuple[tuple[float, float], ...]
     cutoff: int
     fixed: Mapping[str, float | complex]
 
     def __repr__(self) -> str:
         sizes = ", ".join(str(len(curve.points)) for curve in self.curves) or "none"
+        open_ends = f"; {len(self.unsettled)} mergers not settled" if self.unsettled else ""
         return (
-            f"ComplexBoundary({self.axes[0]}, {self.axes[1]}; curves of {sizes} points; cutoff {self.cutoff})"
+            f"ComplexBoundary({self.axes[0]}, {self.axes[1]}; curves of {sizes} points; "
+            f"cutoff {self.cutoff}{open_ends})"
         )
 
 
@@ -118,7 +131,8 @@ def complex_boundary(
     Raises
     ------
     ParameterError
-        If not exactly two parameters have a pair, or a pair is empty.
+        If not exactly two parameters have a pair, a pair is empty, an option is out of range, or T is
+        not real.
 
     Examples
     --------
@@ -131,16 +145,25 @@ def complex_boundary(
     """
     axes, box, fixed = _plane(model, values)
     count = checked_levels(levels)
+    if not 0 < step <= 1:
+        raise ParameterError(f"step = {step!r}: give a part of the box, more than 0 and at most 1.")
+    across = whole_number("lines", lines, 1, "lines across the box in each direction")
+    most = whole_number("most_points", most_points, 1, "points of a curve")
     if cutoff is None:
         corners = [{**fixed, axes[0]: x, axes[1]: y} for x in box[0] for y in box[1]]
         cutoff = sufficient_cutoff(model, corners, count + 1)
     family = MatrixFamily(model, cutoff, axes, fixed)
-    curves: list[BoundaryCurve] = []
-    for axis, other, merger in _seeds(family, box, count, lines):
-        chart, start = _started(family, box, axis, other, merger)
-        if not any(_on_curve(curve, start, chart, step) for curve in curves):
-            curves.append(_curve(chart, *traced(chart, start, step, most_points)))
-    return ComplexBoundary(axes, (tuple(box[0]), tuple(box[1])), tuple(curves), cutoff, fixed)
+    paths: list[tuple[Chart, Path]] = []
+    unsettled: list[NDArray[np.float64]] = []
+    for point, merger in _seeds(family, box, count, across):
+        chart, start = _started(family, box, point, merger)
+        if start is None:
+            unsettled.append(point)
+        elif not any(_on_path(other, path, start, step) for other, path in paths):
+            paths.append((chart, traced(chart, start, step, most)))
+    curves = tuple(_curve(family, chart, path) for chart, path in paths)
+    left = tuple((float(x), float(y)) for x, y in _away(unsettled, curves, box, step))
+    return ComplexBoundary(axes, (tuple(box[0]), tuple(box[1])), curves, left, cutoff, fixed)
 
 
 def _plane(
@@ -152,98 +175,99 @@ def _plane(
             f"{len(pairs)} parameters have a range: give a pair (from, to) for exactly two of "
             f"{', '.join(parameter_names(model))}, e.g. z=(0.1, 1.0), t=(0.2, 2.0); numbers for the others."
         )
-    starts = {name: pair[0] for name, pair in pairs.items()}
-    fixed = plain_numbers(checked_values(model, {**values, **starts}))
-    box = np.array([[float(end) for end in pair] for pair in pairs.values()])
-    if not (np.isfinite(box).all() and (box[:, 0] < box[:, 1]).all()):
-        raise ParameterError("a range is empty or not finite: give the smaller end first, e.g. z=(0.1, 1.0).")
+    ends = [{name: pair[end] for name, pair in pairs.items()} for end in (0, 1)]
+    low, high = (plain_numbers(checked_values(model, {**values, **end})) for end in ends)
+    fixed = {name: value for name, value in low.items() if name not in pairs}
+    box = np.array([[low[name], high[name]] for name in pairs])
+    if np.iscomplexobj(box) or not (box[:, 0] < box[:, 1]).all():
+        raise ParameterError("a range is empty or not real: give the smaller end first, e.g. z=(0.1, 1.0).")
     axes = tuple(pairs)
-    return (axes[0], axes[1]), box, {name: value for name, value in fixed.items() if name not in pairs}
+    return (axes[0], axes[1]), box, fixed
 
 
 def _seeds(
     family: MatrixFamily, box: NDArray[np.float64], levels: int, lines: int
-) -> Iterator[tuple[int, float, FloatMerger]]:
-    """Mergers on lines across the box: (axis that varies, value of the other, merger)."""
+) -> Iterator[tuple[NDArray[np.float64], FloatMerger | None]]:
+    """Mergers on lines across the box: (x, y) and what was found there, None where nothing settles."""
     for axis in (0, 1):
-        name, other = family.names[axis], family.names[1 - axis]
+        grid = np.linspace(box[axis, 0], box[axis, 1], SAMPLES)
         for value in np.linspace(box[1 - axis, 0], box[1 - axis, 1], lines):
-            fixed = {**family.fixed, other: float(value)}
-            try:
-                found = exceptional_points(family.model, name, tuple(box[axis]), levels, **fixed)
-            except ConvergenceError:
-                continue  # another line will meet the curve where Newton's method settles
-            for merger in found:
-                if box[axis, 0] <= merger.value <= box[axis, 1]:
-                    yield axis, float(value), merger
+            fixed = {**family.fixed, family.names[1 - axis]: float(value)}
+            line = MatrixFamily(family.model, family.cutoff, (family.names[axis],), fixed)
+            for place, merger in mergers_on(line, grid, levels):
+                yield np.array([place, value] if axis == 0 else [value, place]), merger
 
 
 def _started(
-    family: MatrixFamily, box: NDArray[np.float64], axis: int, other: float, merger: FloatMerger
-) -> tuple[Chart, State]:
-    point = [merger.value, other] if axis == 0 else [other, merger.value]
-    chart = Chart(family, float(np.sign(merger.eigenvalue)), box[:, 1] - box[:, 0], box)
-    size = count_up_to(family.model.group.rank, family.cutoff)
-    borders = tuple(_fitted(vector, size) for vector in (merger.bordered.left, merger.bordered.right))
-    unknowns = np.array([np.log(abs(merger.eigenvalue)), *(np.array(point) / chart.size)])
-    start = corrected(chart, unknowns, np.array([0.0, 1.0, 1.0]), (borders[0], borders[1]))
-    if start is None:
-        raise ConvergenceError(f"no boundary curve starts at {dict(zip(family.names, point, strict=True))}.")
-    return chart, start
+    family: MatrixFamily, box: NDArray[np.float64], point: NDArray[np.float64], merger: FloatMerger | None
+) -> tuple[Chart, State | None]:
+    if merger is None:
+        return Chart(family, 1.0, box), None
+    chart = Chart(family, float(np.sign(merger.eigenvalue)), box)
+    unknowns = chart.unknowns(merger.eigenvalue, point.tolist())
+    borders = unit(merger.bordered.left), unit(merger.bordered.right)
+    across = tangent_at(chart, State(unknowns, chart.evaluate(unknowns, borders), borders))
+    return chart, corrected(chart, unknowns, across, borders)
 
 
-def _fitted(vector: NDArray[Any], size: int) -> NDArray[np.float64]:
-    numbers = np.zeros(size)
-    numbers[: min(size, len(vector))] = np.real(vector[:size])
-    return np.asarray(numbers / np.linalg.norm(numbers))
+def _on_path(chart: Chart, path: Path, start: State, step: float) -> bool:
+    """Whether a curve runs through a point: asked of the nearest point of each of its sheets."""
+    places = np.array([state.unknowns for state in path.states])
+    distance = np.linalg.norm(places - start.unknowns, axis=1)
+    around = np.pad(distance, 1, constant_values=np.inf)
+    lowest = (distance <= around[:-2]) & (distance <= around[2:]) & (distance <= 1.5 * step)
+    return any(passes(chart, path.states[i], start) for i in np.flatnonzero(lowest))
 
 
-def _on_curve(curve: BoundaryCurve, start: State, chart: Chart, step: float) -> bool:
-    scaled = np.column_stack([np.log(np.abs(curve.eigenvalue)), curve.points / chart.size])
-    ends = scaled[1:] - scaled[:-1]
-    offset = start.unknowns - scaled[:-1]
-    share = np.clip((offset * ends).sum(axis=1) / np.maximum((ends**2).sum(axis=1), 1e-300), 0, 1)
-    distance = np.linalg.norm(offset - share[:, None] * ends, axis=1)
-    return bool(distance.min(initial=np.inf) < 0.2 * step)
+def _away(
+    points: Sequence[NDArray[np.float64]],
+    curves: Sequence[BoundaryCurve],
+    box: NDArray[np.float64],
+    step: float,
+) -> list[NDArray[np.float64]]:
+    """Those of the points that are further than a step from every curve."""
+    size = box[:, 1] - box[:, 0]
+    return [
+        point
+        for point in points
+        if all(np.linalg.norm((curve.points - point) / size, axis=1).min() > step for curve in curves)
+    ]
 
 
-def _curve(chart: Chart, states: list[State], closed: bool) -> BoundaryCurve:
-    points = np.array([chart.point(state.unknowns) for state in states])
-    eigenvalue = np.array([chart.level(state.unknowns) for state in states])
-    grounds, levels, errors = zip(*(_surroundings(chart, state) for state in states), strict=True)
-    curvature = np.array([np.real(state.bordered.g_second) for state in states])
+def _curve(family: MatrixFamily, chart: Chart, traced_path: Path) -> BoundaryCurve:
+    path, turns = with_turns(chart, traced_path)
+    in_x, in_y, cusps = (tuple(turn.index for turn in turns if turn.kind == kind) for kind in (0, 1, CUSP))
+    eigenvalue = np.array([chart.level(state.unknowns) for state in path.states])
+    grounds, levels, errors = zip(
+        *(_surroundings(family, chart, state, 2 + (i in cusps)) for i, state in enumerate(path.states)),
+        strict=True,
+    )
     return BoundaryCurve(
-        points=points,
+        points=np.array([chart.point(state.unknowns) for state in path.states]),
         eigenvalue=eigenvalue,
         mass=-np.log(np.abs(eigenvalue / np.array(grounds))),
         level=np.array(levels),
         error=np.array(errors),
-        folds=tuple(sorted({*_turns(points[:, 0]), *_turns(points[:, 1])} - set(_changes(curvature)))),
-        cusps=tuple(_changes(curvature)),
-        closed=closed,
+        folds=(in_x, in_y),
+        cusps=cusps,
+        closed=path.closed,
+        complete=path.complete,
     )
 
 
-def _surroundings(chart: Chart, state: State) -> tuple[float, int, float]:
-    """λ_0, the position of the pair, and the estimated distance to the boundary of the untruncated T."""
+def _surroundings(family: MatrixFamily, chart: Chart, state: State, members: int) -> tuple[float, int, float]:
+    """|λ_0|, the position of those that merge, the estimated distance to the curve of the untruncated T."""
     level, point = chart.level(state.unknowns), chart.point(state.unknowns)
-    values = {**chart.family.fixed, **dict(zip(chart.family.names, map(float, point), strict=True))}
-    truncation = truncate(chart.family.model, chart.family.cutoff, values)
-    sizes = np.sort(np.abs(np.linalg.eigvals(truncation.dense)))[::-1]
+    values = {**family.fixed, **dict(zip(family.names, map(float, point), strict=True))}
+    truncation = truncate(family.model, family.cutoff, values)
+    found = np.linalg.eigvals(truncation.dense)
+    # rounding parts those that merge by up to its square or cube root: leave them out by number
+    others = found[np.argsort(np.abs(found - level))[members:]]
     bordered = state.bordered
     upwards, downwards = truncation.coupling(bordered.right[:, None], bordered.left[:, None])
     room = abs(level) - truncation.outer_norm
     # g shifts by at most ‖wᵀB‖‖Cx‖/(|λ| − ‖D‖); the slope of g across the curve turns that into a distance
     slope = float(np.linalg.norm(chart.jacobian(bordered, state.unknowns)[0, 1:]))
     shift = float(upwards[0] * downwards[0]) / room if room > 0 else np.inf
-    position = int((sizes > abs(level) * (1 + 1e-6)).sum())
-    return float(sizes[0]), position, shift / slope + 1e-14
-
-
-def _turns(values: NDArray[np.float64]) -> list[int]:
-    steps = np.diff(values)
-    return (1 + np.flatnonzero(steps[1:] * steps[:-1] < 0)).tolist()
-
-
-def _changes(values: NDArray[np.float64]) -> list[int]:
-    return np.flatnonzero(values[1:] * values[:-1] < 0).tolist()
+    position = int((np.abs(others) > abs(level)).sum())
+    return float(np.abs(found).max()), position, shift / slope + 1e-14

@@ -11,15 +11,15 @@ from numpy.typing import NDArray
 
 from haarloom.algebra.labels import count_up_to, validated_cutoff
 from haarloom.exceptions import ParameterError
-from haarloom.numerics.batch import batch_errors, complete_levels, truncate_batch
+from haarloom.numerics.batch import TruncationBatch, batch_errors, complete_levels, truncate_batch
 from haarloom.numerics.bounds import eigenvalue_errors, mass_errors
 from haarloom.numerics.compile import check_memory
 from haarloom.numerics.cutoff import checked_levels
 from haarloom.numerics.dense import solve_dense
 from haarloom.numerics.ordering import masses_from
 from haarloom.numerics.parameters import checked_values, plain_numbers
-from haarloom.numerics.threads import single_threaded
-from haarloom.numerics.tracking import tracked
+from haarloom.numerics.path_levels import excited_branches, solver_between
+from haarloom.numerics.threads import in_parallel, single_threaded, split
 from haarloom.numerics.truncation import truncate
 from haarloom.numerics.verdicts import verdict_codes, verdict_words
 
@@ -104,20 +104,18 @@ def masses_along(
     check_memory(8 * len(line) * size * size, f"{len(line)} points × {size:,} irreps squared")
     solved = _stacked if model.link.diagonal else _one_by_one
     lists = {name: array.reshape(-1) for name, array in checked.items()}
-    values, radius, real, hermitian = solved(model, level, lists, min(count + GUARD, size))
-    kept = values[:, : radius.shape[1]]
-    order = np.concatenate(
-        [np.zeros((len(line), 1), dtype=np.int64), 1 + tracked(masses_from(kept))], axis=1
-    )[:, :count]
-    codes = verdict_codes(kept, radius, values, real, hermitian)
-    masses = masses_from(kept)
-    chosen = order[:, 1:] - 1
+    found = solved(model, level, lists, min(count + GUARD, size))
+    kept = found.values[:, : found.radius.shape[1]]
+    between = solver_between(model, level, others, parameter, line)
+    points = zip(found.values, found.right, found.left, strict=True)
+    chosen = excited_branches(points, kept.shape[1], between)[:, : count - 1] - 1
+    codes = verdict_codes(kept, found.radius, found.values, found.real, found.hermitian)
     verdicts = verdict_words(np.take_along_axis(codes, chosen, axis=1))
     return MassBranches(
         parameter=parameter,
         grid=line,
-        masses=np.take_along_axis(masses, chosen, axis=1),
-        error=np.take_along_axis(mass_errors(kept, radius), chosen, axis=1),
+        masses=np.take_along_axis(masses_from(kept), chosen, axis=1),
+        error=np.take_along_axis(mass_errors(kept, found.radius), chosen, axis=1),
         complex_pair=verdicts == "complex pair",
         verdicts=verdicts,
         ground=kept[:, 0].astype(complex),
@@ -126,30 +124,70 @@ def masses_along(
     )
 
 
-Solved = tuple[NDArray[Any], NDArray[np.float64], bool, NDArray[np.bool_]]
+@dataclass(frozen=True, eq=False)
+class _Solved:
+    """All levels at M points.
+
+    Attributes
+    ----------
+    values, right, left
+        Eigenvalues (M, n) in spectral order, vectors (M, n, n) in columns.
+    radius
+        Of the leading ones, shape (M, levels).
+    real, hermitian
+        Whether T is real everywhere; where it is Hermitian, shape (M,).
+    """
+
+    values: NDArray[Any]
+    right: NDArray[Any]
+    left: NDArray[Any]
+    radius: NDArray[np.float64]
+    real: bool
+    hermitian: NDArray[np.bool_]
 
 
-def _stacked(model: RingModel, cutoff: int, values: Mapping[str, NDArray[Any]], levels: int) -> Solved:
-    """Eigenvalues (M, n), radii (M, levels), whether T is real, where it is Hermitian: all at once."""
-    batch = truncate_batch(model, cutoff, values)
-    found, right, left = batch.solved()
-    radius = batch_errors(batch, complete_levels(batch, found, right, left), levels)
-    return found, radius, batch.real, batch.hermitian
+def _stacked(model: RingModel, cutoff: int, values: Mapping[str, NDArray[Any]], levels: int) -> _Solved:
+    """All points at once, a part of them in each thread."""
+
+    def job(part: slice) -> tuple[TruncationBatch, tuple[NDArray[Any], ...], NDArray[np.float64]]:
+        some = {name: array if len(array) == 1 else array[part] for name, array in values.items()}
+        batch = truncate_batch(model, cutoff, some)
+        found = batch.solved()
+        return batch, found, batch_errors(batch, complete_levels(batch, *found), levels)
+
+    points = max(len(array) for array in values.values())
+    batches, found, radii = zip(*in_parallel(job, split(points, LEAST_STACK)), strict=True)
+    eigenvalues, right, left = (np.concatenate(arrays) for arrays in zip(*found, strict=True))
+    return _Solved(
+        values=eigenvalues,
+        right=right,
+        left=left,
+        radius=np.concatenate(radii),
+        real=all(batch.real for batch in batches),
+        hermitian=np.concatenate([batch.hermitian for batch in batches]),
+    )
 
 
-def _one_by_one(model: RingModel, cutoff: int, values: Mapping[str, NDArray[Any]], levels: int) -> Solved:
-    """The same point by point, for links that mix irreps."""
+def _one_by_one(model: RingModel, cutoff: int, values: Mapping[str, NDArray[Any]], levels: int) -> _Solved:
+    """Point by point, for links that mix irreps."""
     points = max(len(array) for array in values.values())
     truncations = [
         truncate(model, cutoff, {name: array[min(i, len(array) - 1)] for name, array in values.items()})
         for i in range(points)
     ]
     systems = [solve_dense(truncation) for truncation in truncations]
-    radius = np.array([eigenvalue_errors(t, s, levels) for t, s in zip(truncations, systems, strict=True)])
-    found = np.array([system.values.astype(complex) for system in systems])
-    real = all(truncation.real for truncation in truncations)
-    return found, radius, real, np.array([truncation.hermitian for truncation in truncations])
+    return _Solved(
+        values=np.array([system.values.astype(complex) for system in systems]),
+        right=np.array([system.right for system in systems]),
+        left=np.array([system.left for system in systems]),
+        radius=np.array([eigenvalue_errors(t, s, levels) for t, s in zip(truncations, systems, strict=True)]),
+        real=all(truncation.real for truncation in truncations),
+        hermitian=np.array([truncation.hermitian for truncation in truncations]),
+    )
 
+
+LEAST_STACK = 16
+"""Fewest matrices for a thread."""
 
 GUARD = 4
 """Levels beyond those asked for that are tracked along, so that a branch may leave the leading ones."""

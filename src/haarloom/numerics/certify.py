@@ -14,7 +14,7 @@ import numpy as np
 
 from haarloom.algebra.labels import count_up_to
 from haarloom.exceptions import ParameterError
-from haarloom.numerics.ball_truncation import BallTruncation, ball_truncation
+from haarloom.numerics.ball_truncation import BallTruncation, ball_truncation, refuse_unproven
 from haarloom.numerics.ball_vectors import approximate_vectors
 from haarloom.numerics.balls import Interval, as_exact, exact_text, precision
 from haarloom.numerics.cutoff import automatic_truncation, checked_levels
@@ -25,7 +25,16 @@ from haarloom.numerics.threads import single_threaded
 if TYPE_CHECKING:
     from haarloom.ring.model import RingModel
 
-__all__ = ["UNDECIDED", "Certificate", "CertifiedLevel", "attempt", "certify", "prepared", "values_text"]
+__all__ = [
+    "UNDECIDED",
+    "Certificate",
+    "CertifiedLevel",
+    "attempt",
+    "certify",
+    "checked_digits",
+    "prepared",
+    "values_text",
+]
 
 IRREP_LIMIT = 150
 """Most irreps in a certified basis: eigenvectors at 40 digits then take about ten seconds."""
@@ -126,6 +135,11 @@ def certify(
 ) -> Certificate:
     """Enclose the leading levels of the untruncated T in proven balls.
 
+    Site weights need exact factors (`character_factors`): finite ones, bosons, loop fields, polynomial
+    potentials, written polynomials times exponentials of polynomials, and products of all these. Links need
+    to be diagonal with a proven tail: heat kernel, Wilson, plaquette weights with exact factors, tables,
+    and strips stacked of such.
+
     Parameters
     ----------
     digits
@@ -147,11 +161,12 @@ def certify(
     Raises
     ------
     ConvergenceError
-        If the weights have no proven tail bound.
+        If a weight has no proven bound, with the reason, before anything is computed; if the parameters are
+        too close to the edge of their domain.
     ParameterError, MissingValueError
         For values as :func:`haarloom.numerics.spectrum.spectrum`.
     """
-    wanted = _checked_digits(digits)
+    wanted = checked_digits(digits)
     count = checked_levels(levels)
     exact, cutoff = prepared(model, count, values)
     if any(isinstance(value, Interval) for value in exact.values()):
@@ -174,10 +189,11 @@ def prepared(model: RingModel, levels: int, values: Mapping[str, Any]) -> tuple[
     exact = {name: as_exact(name, value) for name, value in values.items()}
     points = {name: _middle(value) for name, value in exact.items()}
     checked_values(model, points)
+    refuse_unproven(model, exact)
     return exact, automatic_truncation(model, levels, points, 1e-8)[0].cutoff + 1
 
 
-def _checked_digits(digits: object) -> int:
+def checked_digits(digits: object) -> int:
     if not isinstance(digits, int) or isinstance(digits, bool) or not 1 <= digits <= 200:
         raise ParameterError(f"digits = {digits!r}: give a whole number of decimal places from 1 to 200.")
     return digits

@@ -7,16 +7,47 @@ folds in x or y, and through cusps, where three levels meet and only its project
 
 from __future__ import annotations
 
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
-from haarloom.numerics.bordered import BorderedPoint, bordered_point
-from haarloom.numerics.mergers import MatrixFamily
+from haarloom.exceptions import ConvergenceError
+from haarloom.numerics.bordered import BorderedPoint, Borders, bordered_point, unit
 
-__all__ = ["Chart", "State", "corrected", "traced", "unit"]
+__all__ = [
+    "NOISE",
+    "Chart",
+    "Family",
+    "Path",
+    "State",
+    "corrected",
+    "passes",
+    "tangent_at",
+    "traced",
+    "zero_along",
+]
+
+SETTLED = 1e-10
+"""A Newton step this short is the last: the error left is its square."""
+
+NOISE = 1e-6
+"""Steps below this that no longer shrink are rounding: a very ill-conditioned pair gets no better."""
+
+SHORTEST = 1e-5
+"""A curve is given up where it wants steps shorter than this part of the largest."""
+
+STRAIGHT = 0.94
+"""Smallest cosine between the tangents at both ends of a step: about 20 degrees."""
+
+
+class Family(Protocol):
+    """A real matrix as a function of two parameters."""
+
+    def around(self, point: Sequence[float]) -> tuple[NDArray[Any], list[NDArray[Any]]]:
+        """The matrix, shape (n, n), and its slope by each parameter."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -25,24 +56,54 @@ class State:
 
     unknowns: NDArray[np.float64]
     bordered: BorderedPoint
-    borders: tuple[NDArray[Any], NDArray[Any]]
+    borders: Borders
+
+
+@dataclass(frozen=True, eq=False)
+class Path:
+    """Points of one curve in order.
+
+    Attributes
+    ----------
+    closed
+        Whether the last point is the first one again.
+    complete
+        Whether nothing is missing: the curve is closed, or both ends lie on the edge of the box.
+    """
+
+    states: list[State]
+    closed: bool
+    complete: bool
 
 
 @dataclass(frozen=True, eq=False)
 class Chart:
-    """The problem in the unknowns (ln|λ|, x/width, y/height)."""
+    """The problem in the unknowns (ln|λ|, x/width, y/height).
 
-    family: MatrixFamily
+    Attributes
+    ----------
+    sign
+        Of λ, the same all along a curve.
+    box
+        ((x from, x to), (y from, y to)).
+    """
+
+    family: Family
     sign: float
-    size: NDArray[np.float64]
     box: NDArray[np.float64]
 
-    def evaluate(
-        self, unknowns: NDArray[np.float64], borders: tuple[NDArray[Any], NDArray[Any]]
-    ) -> BorderedPoint:
+    @property
+    def size(self) -> NDArray[np.float64]:
+        """Width and height of the box."""
+        return np.asarray(self.box[:, 1] - self.box[:, 0])
+
+    def evaluate(self, unknowns: NDArray[np.float64], borders: Borders) -> BorderedPoint:
         return bordered_point(
             *self.family.around(self.point(unknowns).tolist()), self.level(unknowns), borders
         )
+
+    def unknowns(self, level: float, point: Sequence[float]) -> NDArray[np.float64]:
+        return np.array([np.log(abs(level)), *(np.asarray(point) / self.size)])
 
     def level(self, unknowns: NDArray[np.float64]) -> float:
         return float(self.sign * np.exp(unknowns[0]))
@@ -53,93 +114,128 @@ class Chart:
     def jacobian(self, bordered: BorderedPoint, unknowns: NDArray[np.float64]) -> NDArray[np.float64]:
         return np.asarray(np.real(bordered.jacobian) * [self.level(unknowns), *self.size])
 
-    def inside(self, unknowns: NDArray[np.float64]) -> bool:
+    def margin(self, unknowns: NDArray[np.float64]) -> float:
+        """Distance to the nearest edge in units of the box, negative outside."""
         point = self.point(unknowns)
-        return bool((point >= self.box[:, 0]).all() and (point <= self.box[:, 1]).all())
+        return float((np.array([point - self.box[:, 0], self.box[:, 1] - point]) / self.size).min())
 
 
 def corrected(
-    chart: Chart,
-    guess: NDArray[np.float64],
-    tangent: NDArray[np.float64],
-    borders: tuple[NDArray[Any], NDArray[Any]],
+    chart: Chart, guess: NDArray[np.float64], tangent: NDArray[np.float64], borders: Borders
 ) -> State | None:
     """Newton's method in the plane through the guess across the tangent; None where it does not settle."""
-    unknowns = guess.copy()
-    for _ in range(8):
-        bordered = chart.evaluate(unknowns, borders)
-        system = np.vstack([chart.jacobian(bordered, unknowns), tangent])
-        residual = np.array([*np.real(bordered.residual), tangent @ (unknowns - guess)])
-        change = np.linalg.solve(system, -residual)
-        unknowns = unknowns + change
-        borders = (unit(bordered.left), unit(bordered.right))
-        if np.abs(change).max() < 1e-10:
-            return State(unknowns, chart.evaluate(unknowns, borders), borders)
-        if np.abs(change).max() > 0.5:
+    unknowns, before = guess.copy(), np.inf
+    for _ in range(10):
+        try:
+            bordered = chart.evaluate(unknowns, borders)
+            system = np.vstack([chart.jacobian(bordered, unknowns), tangent])
+            residual = np.array([*np.real(bordered.residual), tangent @ (unknowns - guess)])
+            change = np.linalg.solve(system, -residual)
+        except np.linalg.LinAlgError:
             return None
+        unknowns, length = unknowns + change, float(np.abs(change).max())
+        borders = (unit(bordered.left), unit(bordered.right))
+        if length < SETTLED or before / 2 < length < NOISE:
+            return State(unknowns, chart.evaluate(unknowns, borders), borders)
+        if not length < 0.5:
+            return None
+        before = length
     return None
 
 
-def unit(vector: NDArray[Any]) -> NDArray[np.float64]:
-    """Real part, normalised."""
-    return np.asarray(np.real(vector) / np.linalg.norm(vector))
-
-
-def _tangent(chart: Chart, state: State, before: NDArray[np.float64] | None) -> NDArray[np.float64]:
-    """Unit tangent: the null vector of the 2 × 3 Jacobian, kept in the direction of travel."""
+def tangent_at(chart: Chart, state: State, ahead: NDArray[np.float64] | None = None) -> NDArray[np.float64]:
+    """Unit tangent: the null vector of the 2 × 3 Jacobian, on the side of ``ahead``."""
     first, second = chart.jacobian(state.bordered, state.unknowns)
     direction = np.cross(first, second)
     direction = direction / np.linalg.norm(direction)
-    return direction if before is None or direction @ before > 0 else -direction
+    return direction if ahead is None or direction @ ahead > 0 else -direction
 
 
-def traced(chart: Chart, start: State, step: float, most_points: int) -> tuple[list[State], bool]:
-    """Points of the curve through the start, in order, and whether it closes."""
-    forward, closed = _followed(chart, start, 1.0, step, most_points)
-    backward = [] if closed else _followed(chart, start, -1.0, step, most_points)[0]
-    return [*reversed(backward), start, *forward], closed
+def passes(chart: Chart, state: State, target: State) -> bool:
+    """Whether the curve through one point runs through another that is at most a step away.
+
+    Two sheets may come close to each other, as they do near a cusp: distance alone decides nothing.
+    """
+    tangent = tangent_at(chart, state)
+    offset = tangent @ (target.unknowns - state.unknowns)
+    ahead = corrected(chart, state.unknowns + offset * tangent, tangent, state.borders)
+    return ahead is not None and bool(np.abs(ahead.unknowns - target.unknowns).max() < NOISE)
+
+
+def traced(chart: Chart, start: State, step: float, most_points: int) -> Path:
+    """The curve through the start, both ways until it leaves the box, or round to the start again."""
+    forward, ending = _followed(chart, start, 1.0, step, most_points)
+    if ending == "closed":
+        return Path([start, *forward, start], True, True)
+    backward, beginning = _followed(chart, start, -1.0, step, most_points)
+    return Path([*reversed(backward), start, *forward], False, beginning == ending == "edge")
 
 
 def _followed(
     chart: Chart, start: State, sign: float, step: float, most_points: int
-) -> tuple[list[State], bool]:
-    """Points from the start in one direction, until the box is left or the start met again."""
+) -> tuple[list[State], str]:
+    """Points after the start in one direction, and how they end: "edge", "closed" or "given up"."""
     found: list[State] = []
     state, length = start, step
-    tangent = sign * _tangent(chart, start, None)
-    while len(found) < most_points and length > 1e-5 * step:
+    tangent = sign * tangent_at(chart, start)
+    while len(found) < most_points and length > SHORTEST * step:
         ahead = corrected(chart, state.unknowns + length * tangent, tangent, state.borders)
-        if ahead is None or _turned(chart, ahead, tangent) or _far(ahead, state, length):
+        if ahead is None or _strayed(chart, state, ahead, tangent, length):
             length /= 2
             continue
-        if not chart.inside(ahead.unknowns):
-            edge = _on_edge(chart, state, ahead)
-            return [*found, edge] if edge else found, False
-        tangent = _tangent(chart, ahead, tangent)
+        if found and _between(start, state, ahead, tangent) and passes(chart, state, start):
+            return found, "closed"
+        if chart.margin(ahead.unknowns) < 0:
+            if chart.margin(state.unknowns) < NOISE:
+                return found, "edge"
+            try:
+                edge = zero_along(chart, state, ahead, lambda state: chart.margin(state.unknowns))
+            except ConvergenceError:
+                length /= 2
+                continue
+            return [*found, edge], "edge"
+        tangent = tangent_at(chart, ahead, tangent)
         found.append(ahead)
-        if len(found) > 3 and np.linalg.norm(ahead.unknowns - start.unknowns) < 0.75 * length:
-            return found, True
         state, length = ahead, min(step, 1.4 * length)
-    return found, False
+    return found, "given up"
 
 
-def _on_edge(chart: Chart, inside: State, outside: State) -> State | None:
-    """The point where the curve leaves the box, between two of its points."""
-    ends = np.array([inside.unknowns[1:], outside.unknowns[1:]]) * chart.size
-    travel = ends[1] - ends[0]
-    limit = np.where(travel > 0, chart.box[:, 1], chart.box[:, 0])
-    with np.errstate(divide="ignore", invalid="ignore"):
-        share = np.where(travel != 0, (limit - ends[0]) / travel, np.inf)
-    axis = int(np.argmin(share))
-    guess = inside.unknowns + max(float(share[axis]), 0.0) * (outside.unknowns - inside.unknowns)
-    guess[1 + axis] = limit[axis] / chart.size[axis]
-    return corrected(chart, guess, np.eye(3)[1 + axis], outside.borders)
+def _strayed(chart: Chart, state: State, ahead: State, tangent: NDArray[np.float64], length: float) -> bool:
+    """Whether a step bends too much to be trusted."""
+    turned = tangent_at(chart, ahead, tangent) @ tangent < STRAIGHT
+    return bool(turned or np.linalg.norm(ahead.unknowns - state.unknowns) > 1.5 * length)
 
 
-def _turned(chart: Chart, ahead: State, tangent: NDArray[np.float64]) -> bool:
-    """Whether the direction changed by more than about 20 degrees in one step."""
-    return float(abs(_tangent(chart, ahead, tangent) @ tangent)) < 0.94
+def _between(start: State, state: State, ahead: State, tangent: NDArray[np.float64]) -> bool:
+    """Whether the start lies beside the step just taken."""
+    along = tangent @ (start.unknowns - state.unknowns)
+    apart = np.linalg.norm(start.unknowns - state.unknowns)
+    reach = np.linalg.norm(ahead.unknowns - state.unknowns)
+    return bool(0 < along <= tangent @ (ahead.unknowns - state.unknowns) and apart <= 1.01 * reach)
 
 
-def _far(ahead: State, state: State, length: float) -> bool:
-    return float(np.linalg.norm(ahead.unknowns - state.unknowns)) > 1.5 * length
+def zero_along(chart: Chart, first: State, second: State, test: Callable[[State], float]) -> State:
+    """The point between two neighbours where a function of the curve vanishes, by Brent's method.
+
+    Raises
+    ------
+    ConvergenceError
+        If the curve cannot be followed between the two, or the function has one sign at both.
+    """
+    from scipy.optimize import brentq
+
+    tangent = tangent_at(chart, first, second.unknowns - first.unknowns)
+
+    def state(offset: float) -> State:
+        found = corrected(chart, first.unknowns + offset * tangent, tangent, first.borders)
+        if found is None:
+            raise ConvergenceError("a boundary curve bends too much between two points: give a smaller step.")
+        return found
+
+    whole = float(tangent @ (second.unknowns - first.unknowns))
+    ends = test(first), test(state(whole))
+    if ends[0] * ends[1] > 0:
+        raise ConvergenceError(
+            "a boundary curve lost its orientation between two points: give a smaller step."
+        )
+    return state(float(brentq(lambda offset: test(state(offset)), 0.0, whole, xtol=1e-14)))

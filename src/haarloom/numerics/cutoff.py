@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from haarloom.algebra.labels import count_up_to
+from haarloom.algebra.whole_numbers import whole_number
 from haarloom.exceptions import ConvergenceError, ParameterError
 from haarloom.numerics.bounds import eigenvalue_errors, mass_errors
 from haarloom.numerics.dense import EigenSystem
@@ -106,9 +107,7 @@ def checked_levels(levels: object, size: int | None = None) -> int:
     ParameterError
         If it is not a whole number ≥ 1, or more than the ``size`` irreps of the basis.
     """
-    if isinstance(levels, bool) or not hasattr(levels, "__index__") or levels.__index__() < 1:
-        raise ParameterError(f"levels = {levels!r} is no number of levels: give a whole number ≥ 1.")
-    count = int(levels.__index__())
+    count = whole_number("levels", levels, 1, "the leading eigenvalue counts as one")
     if size is not None and count > size:
         raise ParameterError(
             f"{count} levels are more than the {size} irreps of the basis: "

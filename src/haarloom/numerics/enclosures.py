@@ -19,7 +19,8 @@ import flint
 import numpy as np
 from numpy.typing import NDArray
 
-from haarloom.numerics.ball_truncation import BallTruncation, upper_float
+from haarloom.numerics.ball_truncation import BallTruncation
+from haarloom.numerics.balls import upper_float
 
 __all__ = ["Disc", "Enclosure", "enclose"]
 

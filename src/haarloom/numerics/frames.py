@@ -13,13 +13,15 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from functools import partial
 from itertools import pairwise
+from math import ceil
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from haarloom.numerics.group_levels import group_radii, pencil_levels
+from haarloom.numerics.group_levels import group_numbers, group_radii
 from haarloom.numerics.interpolation import chebyshev_decay, chebyshev_nodes, lagrange_matrix
+from haarloom.numerics.labels import conjugation
 from haarloom.numerics.ordering import spectral_order
 from haarloom.numerics.plane import MANY_FAILURES, NODES, Plane
 from haarloom.numerics.plane_images import PartJob, plane_parts, point_parts
@@ -37,11 +39,23 @@ GAP = 0.9
 LEAST_NODES = 8
 """Fewest nodes for a thread."""
 
-SMOOTH = 1e-8
+SMOOTH = 3e-9
 """Interpolation error of a subspace that is aimed at: its square is lost in rounding."""
 
-BEND = 1e-6
+BEND = 1e-7
 """Estimated error of an interpolated subspace from which on it is not evaluated."""
+
+MARGIN = 1
+"""Nodes beyond that estimate."""
+
+SPREAD = 1.25
+"""How much the resolvent of the levels left out may grow between the points at which it is measured."""
+
+FEW_NODES = 9
+"""Nodes from which the number that is needed along an axis is estimated."""
+
+FAR = 0.25
+"""Smallest over largest value of an axis from which on it counts as away from zero."""
 
 SAMPLE = 4
 """Of so many points along each axis one is tried before a patch is evaluated in full."""
@@ -65,12 +79,16 @@ class _Frames:
         Slices of the m vectors.
     rest
         Largest ratio of the first |λ| left out to the last taken in.
+    swell
+        How much larger the resolvent of the levels left out is, at a leading level, than that of a
+        normal matrix with the same levels; measured at some nodes.
     """
 
     nodes: tuple[NDArray[np.float64], NDArray[np.float64]]
     vectors: NDArray[Any]
     groups: tuple[slice, ...]
     rest: float
+    swell: float = 1.0
 
 
 def levels_from_frames(
@@ -90,6 +108,7 @@ def levels_from_frames(
     frames = _frames(plane, (counts[0], counts[1]))
     if frames is None:
         return None
+    frames = replace(frames, swell=_swell(plane, frames))
     sample = replace(plane, axes=(plane.axes[0][::SAMPLE], plane.axes[1][::SAMPLE]))
     if not sample.accepts(*_everywhere(sample, frames)[:2]).mean() >= 1 - MANY_FAILURES:
         return None
@@ -122,35 +141,36 @@ def _improved(plane: Plane, frames: _Frames, found: Levels) -> None:
 
 def _weights(plane: Plane, frames: _Frames) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     first, second = (
-        lagrange_matrix(nodes, axis) if len(axis) == 1 else lagrange_matrix(*_stretched(nodes, axis))
+        lagrange_matrix(_stretched(nodes, axis), _stretched(axis, axis))
         for nodes, axis in zip(frames.nodes, plane.axes, strict=True)
     )
     return first, second
 
 
-def _stretched(
-    nodes: NDArray[np.float64], axis: NDArray[np.float64]
-) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Square roots of a positive parameter: subspaces bend most near 0 (measured in t and in z)."""
-    return (np.sqrt(nodes), np.sqrt(axis)) if axis.min() >= 0 else (nodes, axis)
-
-
 def _nodes(axis: NDArray[np.float64], count: int) -> NDArray[np.float64]:
     if len(axis) == 1:
         return axis
-    if axis.min() >= 0:
-        return np.asarray(chebyshev_nodes(np.sqrt(axis.min()), np.sqrt(axis.max()), count) ** 2)
-    return chebyshev_nodes(axis.min(), axis.max(), count)
+    ends = _stretched(axis[[0, -1]], axis)
+    nodes = chebyshev_nodes(ends.min(), ends.max(), count)
+    return np.exp(nodes) if _logarithmic(axis) else nodes
+
+
+def _stretched(numbers: NDArray[np.float64], axis: NDArray[np.float64]) -> NDArray[np.float64]:
+    """The variable in which subspaces are interpolated along an axis."""
+    return np.log(numbers) if _logarithmic(axis) else numbers
+
+
+def _logarithmic(axis: NDArray[np.float64]) -> bool:
+    """Away from zero ln t and ln z need fewer nodes than t and z, near zero more (measured)."""
+    low, high = sorted((float(axis[0]), float(axis[-1])))
+    return low > FAR * high > 0
 
 
 def _solved(plane: Plane, frames: _Frames, job: PartJob) -> tuple[slice, Levels]:
     part = job()
-    groups = [
-        pencil_levels(part.vectors[:, group], part.images[:, group], part.beyond[:, group], part.dual)
-        for group in frames.groups
-    ]
+    groups = group_numbers(part.vectors, part.images, part.beyond, part.dual, frames.groups)
     levels = np.concatenate([group.values for group in groups])
-    radii = group_radii(groups, part.margins, frames.rest * np.abs(levels[-1])).T
+    radii = group_radii(groups, part.margins, frames.rest * np.abs(levels[-1]), frames.swell).T
     levels = np.ascontiguousarray(levels.T)
     order = spectral_order(levels)
     levels, radii = (np.take_along_axis(array, order, axis=1) for array in (levels, radii))
@@ -164,17 +184,22 @@ def _node_count(plane: Plane, axis: int) -> int | None:
     line = plane.axes[axis]
     if len(line) <= 3:
         return len(line)
-    most = min(NODES, len(line))
+    few = min(FEW_NODES, len(line))
     middle = plane.axes[1 - axis][len(plane.axes[1 - axis]) // 2 :][:1]
     axes = (line, middle) if axis == 0 else (middle, line)
-    frames = _frames(replace(plane, axes=axes), (most, 1) if axis == 0 else (1, most))
+    frames = _frames(replace(plane, axes=axes), (few, 1) if axis == 0 else (1, few))
     if frames is None:
         return None
     decay = chebyshev_decay(frames.vectors if axis == 0 else frames.vectors[0])
     small = np.flatnonzero(decay < SMOOTH)
     if small.size:
         return int(max(small[0], 3))
-    return most if most == len(line) or decay[-1] < BEND else None
+    # the coefficients of an analytic function fall geometrically
+    fall = np.log(decay[few // 2] / decay[-1]) / (few - 1 - few // 2)
+    most = min(NODES, len(line))
+    if most > few and fall * (most - few) < np.log(decay[-1] / BEND):
+        return None
+    return min(most, few + MARGIN + ceil(np.log(decay[-1] / SMOOTH) / fall)) if fall > 0 else most
 
 
 def _frames(plane: Plane, counts: tuple[int, int]) -> _Frames | None:
@@ -196,6 +221,34 @@ def _frames(plane: Plane, counts: tuple[int, int]) -> _Frames | None:
     vectors = np.concatenate([row for row in rows if row is not None], axis=1)
     vectors = np.ascontiguousarray(vectors).reshape(len(nodes[0]), len(nodes[1]), *vectors.shape[1:])
     return _Frames((nodes[0], nodes[1]), vectors, groups, rest)
+
+
+def _swell(plane: Plane, frames: _Frames) -> float:
+    """The largest ‖(λ − T)⁻¹‖ (|λ| − rest) on what the groups leave out, at corners and in the middle.
+
+    The inverse restricted to it is the upper left block of the inverse of the bordered matrix of
+    :mod:`haarloom.numerics.corrections`.
+    """
+    ends = [np.array([0, len(nodes) // 2, len(nodes) - 1]) for nodes in frames.nodes]
+    rows, columns = ends[0][[0, 0, 1, 2, 2]], ends[1][[0, 2, 1, 0, 2]]
+    batch = plane.batch(frames.nodes[0][rows], frames.nodes[1][columns])
+    basis = np.swapaxes(frames.vectors[rows, columns], 1, 2)
+    points, size, count = basis.shape
+    mirror = conjugation(plane.model.group.rank, plane.cutoff)
+    partner = np.swapaxes(batch.phase[:, :size, None] * basis[:, mirror], 1, 2)
+    block = np.linalg.solve(partner @ basis, partner @ (batch.matrix @ basis))
+    levels: NDArray[Any] = np.linalg.eigvals(block)
+    levels = np.take_along_axis(levels, np.argsort(-np.abs(levels), axis=1), axis=1)
+    rest = frames.rest * np.abs(levels[:, -1:])
+    leading = levels[:, : plane.levels]
+    kind = np.result_type(batch.matrix, leading)
+    bordered = np.zeros((points, leading.shape[1], size + count, size + count), dtype=kind)
+    bordered[:, :, :size, :size] = batch.matrix[:, None] - leading[:, :, None, None] * np.eye(size)
+    bordered[:, :, :size, size:] = basis[:, None]
+    bordered[:, :, size:, :size] = partner[:, None]
+    inverse = np.linalg.inv(bordered)[:, :, :size, :size]
+    reach = np.linalg.norm(inverse, 2, axis=(2, 3)) * (np.abs(leading) - rest)
+    return max(1.0, SPREAD * float(reach.max()))
 
 
 def _at_nodes(

@@ -25,7 +25,14 @@ from haarloom.numerics.labels import label_array, positions
 if TYPE_CHECKING:
     from haarloom.algebra.irrep import Irrep
 
-__all__ = ["FusionPattern", "count_weights", "fusion_pattern", "reflection_signs", "strict_rows"]
+__all__ = [
+    "FusionPattern",
+    "count_weights",
+    "fusion_pattern",
+    "reflection_signs",
+    "strict_rows",
+    "weight_orbit",
+]
 
 CHUNK = 1_000_000
 """Most (weight, irrep) pairs reflected at once: bounds the scratch memory at about 200 MB."""
@@ -82,7 +89,7 @@ def fusion_pattern(support: tuple[Irrep, ...], rank: int, cutoff: int, outer: in
     values: list[NDArray[np.int64]] = []
     owners: list[NDArray[np.int64]] = []
     for owner, orbit in enumerate(orbits):
-        for rows, columns, signs in _shifted(_orbit(orbit), rank, cutoff, outer):
+        for rows, columns, signs in _shifted(weight_orbit(orbit), rank, cutoff, outer):
             keys.append(rows * size + columns)
             values.append(signs)
             owners.append(np.full(len(rows), owner))
@@ -100,7 +107,7 @@ def fusion_pattern(support: tuple[Irrep, ...], rank: int, cutoff: int, outer: in
 @lru_cache(maxsize=64)
 def count_weights(support: tuple[Irrep, ...]) -> int:
     """Number of distinct weights of all irreps of a support: elements in a row of W, far from the walls."""
-    return sum(len(_orbit(orbit)) for orbit in _orbits(support)[0])
+    return sum(len(weight_orbit(orbit)) for orbit in _orbits(support)[0])
 
 
 @lru_cache(maxsize=64)
@@ -120,7 +127,7 @@ def _orbits(support: tuple[Irrep, ...]) -> tuple[list[tuple[int, ...]], Any]:
 
 
 @lru_cache(maxsize=4096)
-def _orbit(weight: tuple[int, ...]) -> NDArray[np.int64]:
+def weight_orbit(weight: tuple[int, ...]) -> NDArray[np.int64]:
     """All images of a dominant weight under permutations, as rows of N integers: shape (size, N)."""
     images = np.array(sorted(set(permutations(rows_from_labels(weight)))), dtype=np.int64)
     images.flags.writeable = False

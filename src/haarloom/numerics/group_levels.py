@@ -2,13 +2,18 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["GroupNumbers", "Margins", "group_radii", "pencil_levels"]
+__all__ = ["GroupNumbers", "Margins", "group_numbers", "group_radii"]
+
+
+MIXED = 1e-4
+"""Part of other groups in a group below which its cube is no more than rounding."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -23,60 +28,113 @@ class Margins:
 
 @dataclass(frozen=True, eq=False)
 class GroupNumbers:
-    """A group of s levels at M points.
+    """A group of s levels at M points, one of the g groups of V, with dual basis Y, Y V = 1, and B = Y T V.
 
     Attributes
     ----------
     values
-        Shape (s, M).
+        Levels of its diagonal block of B, shape (s, M).
     right, left
         ‖V‖ and ‖Y‖ of its bases, shape (M,).
-    upwards, residual
-        ‖C V‖ and ‖T V − V B‖, shape (M,).
+    upwards, downwards
+        How strongly they couple beyond the basis, ‖C V‖ and ‖Y B‖, shape (M,).
+    residual, left_residual
+        ‖T V − V B‖ and ‖Y T − B Y‖, shape (M,).
     departure
-        Size of the part of B that is not normal, shape (M,).
+        Size of the part of its diagonal block that is not normal, shape (M,).
+    coupling
+        Product of the norms of its blocks of B with each group, there and back, shape (g, M); for its own
+        0, or infinite where the groups are too mixed for a count to second order.
     """
 
     values: NDArray[np.complex128]
     right: NDArray[np.float64]
     left: NDArray[np.float64]
     upwards: NDArray[np.float64]
+    downwards: NDArray[np.float64]
     residual: NDArray[np.float64]
+    left_residual: NDArray[np.float64]
     departure: NDArray[np.float64]
+    coupling: NDArray[np.float64]
 
 
-def pencil_levels(
+def group_numbers(
     vectors: NDArray[Any],
     images: NDArray[Any],
     beyond: NDArray[Any],
     dual: tuple[NDArray[Any] | None, NDArray[np.int64]],
-) -> GroupNumbers:
-    """Levels of (Vᵀ ΦJ T V, Vᵀ ΦJ V) at M points.
+    groups: Sequence[slice],
+) -> list[GroupNumbers]:
+    """Levels of all groups at M points, from the pencil (Vᵀ ΦJ T V, Vᵀ ΦJ V).
+
+    Because ΦJ maps right onto left vectors, Y is the inverse of the overlap times (ΦJ V)ᵀ, and what
+    holds of left vectors follows from the right ones: Y T − B Y is that inverse times (ΦJ (T V − V B))ᵀ.
 
     Parameters
     ----------
     vectors, images, beyond
-        V, T V inside and beyond the basis, shapes (n, s, M), (n, s, M), (·, s, M).
+        V, T V inside and beyond the basis, shapes (n, m, M), (n, m, M), (·, m, M).
     dual
-        (Φ, J); Φ broadcasts to (n, s, M), or is None where it is 1.
+        (Φ, J); Φ broadcasts to (n, m, M), or is None where it is 1.
+    groups
+        Slices of the m vectors.
     """
     factors, order = dual
     partner = np.take(vectors, order, axis=0)
     if factors is not None:
         partner = partner * factors
-    overlap, element = _products(partner, vectors), _products(partner, images)
-    inverse = _inverse(overlap)
-    block = np.einsum("acp,cdp->adp", inverse, element)
-    if len(block) == 1:
-        residual = images - block * vectors
-    else:
-        residual = images - np.einsum("cap,ncp->nap", block, vectors)
-    right = _size(vectors)
-    values = _block_values(block)
-    departure = np.maximum(_size(block) ** 2 - (np.abs(values) ** 2).sum(axis=0), 0.0)
-    return GroupNumbers(
-        values, right, right * _size(inverse), _size(beyond), _size(residual), np.sqrt(departure)
+    inverse = _inverse(_products(partner, vectors))
+    block = np.einsum("acp,cdp->adp", inverse, _products(partner, images))
+    residual = images - np.einsum("cap,ncp->nap", block, vectors)
+    block, mixed = _decoupled(block, groups)
+    right, up, rest = (
+        np.array([_size(array[:, group]) for group in groups]) for array in (vectors, beyond, residual)
     )
+    turned, inner = (
+        np.array([[_size(array[one, other]) for other in groups] for one in groups])
+        for array in (inverse, block)
+    )
+    left, down, left_rest = (np.einsum("abp,bp->ap", turned, norms) for norms in (right, up, rest))
+    coupling = inner * np.swapaxes(inner, 0, 1)
+    found = []
+    for place, group in enumerate(groups):
+        values = _block_values(block[group, group])
+        departure = np.maximum(inner[place, place] ** 2 - (np.abs(values) ** 2).sum(axis=0), 0.0)
+        coupling[place, place] = np.where(mixed < MIXED, 0.0, np.inf)
+        found.append(
+            GroupNumbers(
+                values=values,
+                right=right[place],
+                left=left[place],
+                upwards=up[place],
+                downwards=down[place],
+                residual=rest[place],
+                left_residual=left_rest[place],
+                departure=np.sqrt(departure),
+                coupling=coupling[place],
+            )
+        )
+    return found
+
+
+def _decoupled(block: NDArray[Any], groups: Sequence[slice]) -> tuple[NDArray[Any], NDArray[np.float64]]:
+    """(1 + X)⁻¹ B (1 + X) with X chosen so that the blocks between groups all but vanish, and ‖X‖.
+
+    X_ab = B_ab/(mean of b − mean of a) solves for it to first order where the levels of a group are close
+    together. X is as small as the interpolation error, so that norms of vectors stay what they were.
+    """
+    if len(groups) == 1:
+        return block, np.zeros(block.shape[-1])
+    means = [np.einsum("aap->p", block[group, group]) / (group.stop - group.start) for group in groups]
+    turn = np.zeros_like(block)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        for one, group in enumerate(groups):
+            for other, foreign in enumerate(groups):
+                if one != other:
+                    turn[group, foreign] = block[group, foreign] / (means[other] - means[one])
+    moved = block + np.einsum("acp,cdp->adp", block, turn)
+    change = np.einsum("acp,cdp->adp", turn, moved)
+    return moved - change + np.einsum("acp,cdp->adp", turn, change), _size(turn)
 
 
 def _products(left: NDArray[Any], right: NDArray[Any]) -> NDArray[Any]:
@@ -116,14 +174,21 @@ def _block_values(block: NDArray[Any]) -> NDArray[np.complex128]:
 
 
 def group_radii(
-    groups: list[GroupNumbers], margins: Margins, rest: NDArray[np.float64]
+    groups: list[GroupNumbers], margins: Margins, rest: NDArray[np.float64], swell: float
 ) -> NDArray[np.float64]:
     """Radius around each level that holds one of the untruncated T, shape (levels, M); else infinite.
 
     The inequality of :mod:`haarloom.numerics.bounds` with one term for each group, solved in closed
     form: a group of s levels has a resolvent of norm at most Σ_k Nᵏ/(δ_1 ⋯ δ_{k+1}), k < s, with δ the
-    distances to its levels, nearest first; and a residual couples it to the levels left out like B and
-    C couple it to what was cut off.
+    distances to its levels, nearest first; a residual couples it to the levels left out like B and C
+    couple it to what was cut off; and what is left of the groups in each other counts in second order.
+
+    Parameters
+    ----------
+    rest
+        Largest |λ| of the levels left out, shape (M,).
+    swell
+        Their resolvent at a level λ is at most this over |λ| − rest; 1 for a normal matrix.
     """
     centres = np.concatenate([group.values for group in groups])
     size = np.abs(centres)
@@ -132,13 +197,16 @@ def group_radii(
     with np.errstate(all="ignore"):
         # a tenth of the distance to D and to the rest is given away: it makes room for the radius itself
         room = (size - margins.beyond) * 0.9
-        spare = (size - rest) * 0.9
+        spare = (size - rest) * (0.9 / swell)
         strengths = [_strength(group, margins, room, spare) for group in groups]
         crowd = _crowd(groups, strengths, apart, owner) + _left_over(groups, margins, room, spare)
         radius = np.full(centres.shape, np.inf)
         for level, number in enumerate(owner):
             group = groups[number]
-            load = strengths[number][level] / (1 - crowd[level])
+            nearest = np.array([apart[level, owner == other].min(axis=0) for other in range(len(groups))])
+            # its own entry is 0, or infinite where there is no bound
+            shift = np.where(group.coupling > 0, group.coupling / nearest, 0.0).sum(axis=0)
+            load = (strengths[number][level] + shift) / (1 - crowd[level])
             found = _reach(load, group.departure, apart[level, owner == number])
             others = apart[level, owner != number].min(axis=0, initial=np.inf)
             holds = (crowd[level] < 1) & (found < 0.1 * np.minimum(others, size[level]))
@@ -150,11 +218,12 @@ def group_radii(
 def _strength(
     group: GroupNumbers, margins: Margins, room: NDArray[np.float64], spare: NDArray[np.float64]
 ) -> NDArray[np.float64]:
-    """√(c² g + ‖V‖² η + r²/…) √(b² g + …) of a group near every level, shape (levels, M)."""
+    """√(c² g + ‖V‖² η + r²/…) √(b² g + ‖Y‖² η + …) of a group near every level, shape (levels, M)."""
     up = group.upwards + margins.tail * group.right
+    down = group.downwards + margins.tail * group.left
     first = up**2 / room + group.right**2 * margins.noise + group.residual**2 / spare
-    # left vectors are ΦJ times right ones and the inverse overlap: the same norms, times ‖Y‖/‖V‖
-    return np.asarray(first * (group.left / group.right))
+    second = down**2 / room + group.left**2 * margins.noise + group.left_residual**2 / spare
+    return np.asarray(np.sqrt(first * second))
 
 
 def _reach(

@@ -30,8 +30,8 @@ FEW_COMPONENTS = 16
 LIFT = 1
 """How much larger the cutoff is for points that miss the tolerance at first."""
 
-NUMBERS = 150_000
-"""Most numbers in the vectors that are evaluated together: they should stay in the cache."""
+NUMBERS = 400_000
+"""Most numbers in the vectors that are evaluated together; bounds scratch memory."""
 
 LEAST_POINTS = 256
 """Fewest points for a thread: each of its calls should be long against the lock they all need between."""

@@ -27,12 +27,12 @@ class PlaneNumbers:
 
     Attributes
     ----------
-    matrices
-        N_c as SciPy CSR arrays, shape (bras, n) each, for the C irreps of W.
+    matrix
+        N_c of all irreps of W side by side, a SciPy CSR array of shape (bras, c · n).
     root, phase, k_errors
         S, Φ and errors of k, shape (bras, R or 1, C or 1).
     site, site_errors
-        w_c and their errors, shape (C, R or 1, C or 1).
+        w_c and their errors, shape (c, R or 1, C or 1).
     mirror
         J inside the basis.
     norm, outside, edge
@@ -42,7 +42,7 @@ class PlaneNumbers:
     """
 
     components: SiteComponents
-    matrices: tuple[Any, ...]
+    matrix: Any
     root: NDArray[np.float64]
     phase: NDArray[Any]
     k_errors: NDArray[np.float64]
@@ -77,22 +77,16 @@ class PlaneNumbers:
 
         names = ("root", "phase", "k_errors", "site", "site_errors", "norm", "outside", "edge", "hermitian")
         parts = {name: part(getattr(self, name)) for name in names}
-        return PlaneNumbers(components=self.components, matrices=self.matrices, mirror=self.mirror, **parts)
+        return PlaneNumbers(components=self.components, matrix=self.matrix, mirror=self.mirror, **parts)
 
     def images(self, vectors: NDArray[Any]) -> NDArray[Any]:
         """T V with all bras: (n, m, r, c) to (bras, m, r, c)."""
-        root = self.root[:, None]
-        dressed = vectors * (
-            root[: self.size] if self.positive else (root * self.phase[:, None])[: self.size]
-        )
-        flat = dressed.reshape(self.size, -1)
-        kind = np.result_type(flat, self.site)
-        total = np.zeros((len(self.root), *vectors.shape[1:]), dtype=kind)
-        for matrix, weight in zip(self.matrices, self.site, strict=True):
-            term = (matrix @ flat).reshape(total.shape)
-            total += np.multiply(term, weight, out=term if term.dtype == kind else None)
-        total *= root
-        return np.asarray(total)
+        size, root = self.size, self.root[:, None]
+        dressed = vectors * (root[:size] if self.positive else (root * self.phase[:, None])[:size])
+        weighted = dressed[None] * self.site[:, None, None]
+        images = (self.matrix @ weighted.reshape(len(self.site) * size, -1)).reshape(-1, *vectors.shape[1:])
+        images *= root
+        return np.asarray(images)
 
     def margins(self, shape: tuple[int, int]) -> Margins:
         """What the bound needs at each point of (rows, columns), counted row by row."""
@@ -127,7 +121,7 @@ def plane_numbers(plane: Plane) -> PlaneNumbers:
     site = [_over(array, shape) for array in (weights, errors, norm, symmetric)]
     return PlaneNumbers(
         components=components,
-        matrices=_component_matrices(components),
+        matrix=_component_matrices(components),
         root=link[0],
         phase=link[1],
         k_errors=link[2],
@@ -159,8 +153,8 @@ def _over(array: NDArray[Any], shape: tuple[int, int]) -> NDArray[Any]:
     return np.ascontiguousarray(full.T).reshape(-1, *shape)
 
 
-def _component_matrices(components: SiteComponents) -> tuple[Any, ...]:
-    """N_c as SciPy CSR arrays, shape (bras, n) each."""
+def _component_matrices(components: SiteComponents) -> Any:
+    """N_c of all irreps of W side by side, as a SciPy CSR array."""
     from scipy import sparse
 
     pattern = components.pattern
@@ -170,7 +164,7 @@ def _component_matrices(components: SiteComponents) -> tuple[Any, ...]:
         places = pattern.components.indices[start:stop]
         entries = (pattern.components.data[start:stop], (pattern.rows[places], pattern.columns[places]))
         found.append(sparse.csr_array(entries, shape=(pattern.outer_size, pattern.size)))
-    return tuple(found)
+    return sparse.hstack(found, format="csr")
 
 
 def _hermitian(

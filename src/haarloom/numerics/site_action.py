@@ -26,7 +26,11 @@ if TYPE_CHECKING:
 
 __all__ = ["FusionAction", "SiteAction", "TorusAction", "torus_action"]
 
-EPS = float(np.finfo(float).eps)
+MANY = 0.25
+"""Columns, as a part of n, from which on the matrix of W is worth more than a transform for each."""
+
+MOST_ELEMENTS = 20_000_000
+"""Most elements of the matrix of a dense W: it bounds memory to 160 MB."""
 
 
 class SiteAction(Protocol):
@@ -98,12 +102,31 @@ class TorusAction:
         """W on columns: (n, m) to (outer size, m)."""
         if not kets.size:
             return np.zeros((self.outer_size, *kets.shape[1:]), dtype=kets.dtype)
+        if kets.size >= MANY * self.size**2 and self.size * self.outer_size <= MOST_ELEMENTS:
+            return np.asarray(self.matrix @ kets)
         columns = kets.reshape(self.size, -1).T
         if self.real and np.iscomplexobj(columns):
             parts = [self._one(column.real) + 1j * self._one(column.imag) for column in columns]
         else:
             parts = [self._one(column) for column in columns]
         return np.stack(parts, axis=1).reshape(self.outer_size, *kets.shape[1:])
+
+    @cached_property
+    def matrix(self) -> NDArray[Any]:
+        """⟨r|W|s⟩ = Σ_σ sgn(σ) Ŵ(r + ρ − σ(s + ρ)) from one transform, shape (outer size, n)."""
+        from scipy import fft
+
+        if self.real:
+            fourier = fft.irfftn(self.density, s=self.shape)
+        else:
+            fourier = fft.fftn(self.density) / self.density.size
+        bras = np.array(np.unravel_index(self.gather, self.shape))
+        total = np.zeros((self.outer_size, self.size), dtype=fourier.dtype)
+        for places, sign in zip(self.scatter, self.signs, strict=True):
+            kets = np.array(np.unravel_index(places, self.shape))
+            # negative places count from the end: the grid is periodic
+            total += sign * fourier[tuple(bra[:, None] - ket for bra, ket in zip(bras, kets, strict=True))]
+        return np.asarray(total)
 
     def _one(self, ket: NDArray[Any]) -> NDArray[Any]:
         from scipy import fft

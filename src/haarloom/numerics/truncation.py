@@ -23,7 +23,7 @@ from haarloom.exceptions import ConvergenceError
 from haarloom.numerics.fusion import count_weights
 from haarloom.numerics.labels import conjugation
 from haarloom.numerics.link_numbers import link_coefficients
-from haarloom.numerics.site_action import EPS, FusionAction, SiteAction, torus_action
+from haarloom.numerics.site_action import FusionAction, SiteAction, torus_action
 from haarloom.numerics.site_components import negligible_beyond, outward_reach, site_components
 
 if TYPE_CHECKING:
@@ -32,6 +32,8 @@ if TYPE_CHECKING:
     from haarloom.ring.model import RingModel
 
 __all__ = ["EPS", "Truncation", "character_errors", "input_errors", "phase_of", "site_numbers", "truncate"]
+
+EPS = float(np.finfo(float).eps)
 
 TRANSFORM_COST = 8.0
 """Elements of a sparse matrix that cost as much as one grid point and one level of a transform (measured)."""

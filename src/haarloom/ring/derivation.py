@@ -36,6 +36,9 @@ EXPAND = "Expand the site weight in characters"
 DECOMPOSE = "Decompose each product that contributes"
 PROJECT = "Project by orthogonality"
 
+MOST_EXPANDED = 100
+"""A finite W with more characters is stated by those that enter the element alone."""
+
 
 @dataclass(frozen=True)
 class Step:
@@ -157,8 +160,10 @@ def _each(groups: Iterable[tuple[Claim, ...]]) -> tuple[Claim, ...]:
 
 
 def _expansion(site: SiteWeight, joined: tuple[Irrep, ...]) -> ExpansionClaim:
-    shown = tuple(site.support()) if site.finite else joined
-    return ExpansionClaim(tuple((c, site.coefficient(c)) for c in shown), complete=site.finite)
+    support = tuple(site.support()) if site.finite else ()
+    whole = 0 < len(support) <= MOST_EXPANDED
+    shown = support if whole else joined
+    return ExpansionClaim(tuple((c, site.coefficient(c)) for c in shown), complete=whole)
 
 
 def _products(bra: Irrep, ket: Irrep, joined: tuple[Irrep, ...]) -> tuple[Claim, ...]:

@@ -25,6 +25,15 @@ if TYPE_CHECKING:
 
 __all__ = ["RingModel"]
 
+OPTIONS = frozenset(
+    [
+        *("self", "model", "levels", "level", "cutoff", "digits", "irrep_limit", "precision_limit"),
+        *("parameter", "order", "between", "prove", "step", "lines", "most_points"),
+        *("tolerance", "executor", "file", "resume", "progress"),
+    ]
+)
+"""Names that mean something else than a parameter in spectrum(…), certify(…), scan(…) and their like."""
+
 
 @dataclass(frozen=True)
 class RingModel:
@@ -44,6 +53,8 @@ class RingModel:
     ------
     GroupError
         If link and site belong to different groups.
+    ParameterError
+        If one of them is no weight, or has a parameter with the name of an option such as ``levels``.
 
     Examples
     --------
@@ -67,6 +78,12 @@ class RingModel:
                     f"{role} = {weight!r} is no {role} weight: "
                     f"build one with the functions of haarloom.actions, and pass link first, site second."
                 )
+        taken = sorted({symbol.name for symbol in self.parameters} & OPTIONS)
+        if taken:
+            raise ParameterError(
+                f"the weights have parameters named {', '.join(taken)}, which are options of the model's own "
+                f"methods, so that no value could be given by name: rename them, for instance {taken[0]}_1."
+            )
         if self.link.group != self.site.group:
             raise GroupError(
                 f"the link weight lives on {self.link.group}, the site weight on {self.site.group}: "

@@ -24,7 +24,8 @@ from haarloom.ring.claims import (
     SelectionClaim,
     SiteElementClaim,
 )
-from haarloom.ring.torus_function import TorusFunction, double_overlap
+from haarloom.ring.link_on_torus import LinkOnTorus, NotReplayable
+from haarloom.ring.torus_function import TorusFunction
 from haarloom.torus.characters import character, weyl_ratio
 
 if TYPE_CHECKING:
@@ -80,10 +81,6 @@ class Verification:
         return "\n".join(lines)
 
 
-class NotReplayable(Exception):
-    """A statement for which this model has no independent route; carries the reason."""
-
-
 @dataclass(frozen=True, eq=False)
 class Torus:
     """The model at fixed random values, seen on the maximal torus only."""
@@ -100,34 +97,13 @@ class Torus:
             self.model.group,
             lambda angles: site.density_at(angles, self.values),
             reach=site.reach(self.values) if site.finite else None,
+            form=None if site.finite else getattr(site, "determinant_form", lambda values: None)(self.values),
         )
 
     @cached_property
-    def plaquette(self) -> TorusFunction:
-        """The un-normalised plaquette weight w(U)."""
-        link = self.model.link
-        if link.plaquette_at(self.angles[:1], self.values) is None:
-            raise NotReplayable(
-                "link coefficients that were given as they are, with no plaquette weight behind them"
-            )
-        return TorusFunction(self.model.group, lambda angles: link.plaquette_at(angles, self.values))
-
-    def link_coefficient(self, irrep: Irrep) -> complex:
-        """k_r = (w_r / w_0)^{N_t} from w(U) = Σ_r d_r w_r χ_r(U)."""
-        plaquette, trivial = self.plaquette, self.model.group.trivial
-        if irrep == trivial:
-            return 1.0  # w_0 / w_0, for which no integral is needed
-        ratio = plaquette.coefficient(irrep) / irrep.dimension / plaquette.coefficient(trivial)
-        return complex(ratio**self.model.link.plaquettes)
-
-    def kernel_element(self, bra: Irrep, ket: Irrep) -> complex:
-        """∫dP ∫dP′ χ_bra(P)* K(P, P′) χ_ket(P′)."""
-        density = getattr(self.model.link, "kernel_density_at", None)
-        if density is None:
-            raise NotReplayable(
-                "link elements that were given as they are, with no kernel K(P, P′) behind them"
-            )
-        return double_overlap(self.model.group, lambda a, b: density(a, b, self.values), bra, ket)
+    def link(self) -> LinkOnTorus:
+        """The link weight, through its plaquette weight or its kernel."""
+        return LinkOnTorus(self.model.link, self.values)
 
     def number(self, expression: sympy.Expr) -> complex:
         """A stated expression at the random values."""
@@ -155,17 +131,27 @@ def _random_torus(derivation: Derivation, rng: np.random.Generator) -> Torus:
     draws = (
         Torus(model, {name: v * scale if name in links else v for name, v in values.items()}, angles)
         for scale in LINK_SCALES
+        if model.link.diagonal or scale <= 1
     )
     sizes = {draw: _smallest_coefficient(draw, derivation) for draw in draws}
     return min(sizes, key=lambda draw: (sizes[draw] < VISIBLE, abs(np.log(sizes[draw] / VISIBLE))))
 
 
 def _smallest_coefficient(torus: Torus, derivation: Derivation) -> float:
+    """The least of the link coefficients or link elements at hand, 1e-300 if one is zero or has no value."""
     link = torus.model.link
-    if not link.diagonal:
-        return VISIBLE
-    ends = (abs(torus.number(link.coefficient(irrep))) for irrep in (derivation.bra, derivation.ket))
-    return max(min(ends), 1e-300)
+    try:
+        stated = [
+            claim.value
+            for step in derivation.steps
+            for claim in step.claims
+            if isinstance(claim, KernelClaim)
+        ]
+        ends = (derivation.bra, derivation.ket) if link.diagonal else ()
+        at_hand = [*stated, *(link.coefficient(irrep) for irrep in ends)]
+        return max(min((abs(torus.number(value)) for value in at_hand), default=VISIBLE), 1e-300)
+    except (ConvergenceError, SizeError):
+        return 1e-300
 
 
 def _replay_step(title: str, claims: tuple[Claim, ...], torus: Torus, tolerance: float) -> ReplayedStep:
@@ -234,7 +220,7 @@ def _(claim: SiteElementClaim, torus: Torus) -> float:
 @residual.register
 def _(claim: LinkFactorClaim, torus: Torus) -> float:
     value = torus.number(claim.value)
-    stated = _distance(value, torus.link_coefficient(claim.irrep))
+    stated = _distance(value, torus.link.coefficient(claim.irrep))
     return max(stated, _distance(torus.number(claim.root) ** 2, value))
 
 
@@ -242,7 +228,7 @@ def _(claim: LinkFactorClaim, torus: Torus) -> float:
 def _(claim: ElementClaim, torus: Torus) -> float:
     # Squares: the quadrature's rounding error of 1e-16 in a small k_r would be 1e-8 in its root.
     stated = torus.number(claim.value)
-    bra, ket = (torus.link_coefficient(irrep) for irrep in (claim.bra, claim.ket))
+    bra, ket = (torus.link.coefficient(irrep) for irrep in (claim.bra, claim.ket))
     site = torus.site.matrix_element(claim.bra, claim.ket)
     along = stated * np.conj(cmath.sqrt(bra) * site * cmath.sqrt(ket))
     return max(_distance(stated**2, bra * site**2 * ket), _distance(abs(along), along))
@@ -250,13 +236,14 @@ def _(claim: ElementClaim, torus: Torus) -> float:
 
 @residual.register
 def _(claim: KernelClaim, torus: Torus) -> float:
-    return _distance(torus.number(claim.value), torus.kernel_element(claim.bra, claim.middle))
+    return _distance(torus.number(claim.value), torus.link.kernel_element(claim.bra, claim.middle))
 
 
 @residual.register
 def _(claim: RowClaim, torus: Torus) -> float:
     found = sum(
-        torus.kernel_element(claim.bra, q) * torus.site.matrix_element(q, claim.ket) for q in claim.through
+        torus.link.kernel_element(claim.bra, q) * torus.site.matrix_element(q, claim.ket)
+        for q in claim.through
     )
     return _distance(torus.number(claim.value), found)
 

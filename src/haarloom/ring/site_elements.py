@@ -47,7 +47,7 @@ def site_elements(site: SiteWeight, basis: tuple[Irrep, ...]) -> dict[tuple[int,
 
 def _components(site: SiteWeight, basis: tuple[Irrep, ...]) -> tuple[Irrep, ...]:
     """The irreps of W that can connect two irreps of the basis: at most twice its cutoff."""
+    farthest = 2 * sum(basis[-1].labels)
     if site.finite:
-        return tuple(site.support())
-    group = basis[0].group
-    return tuple(group.irreps(2 * sum(basis[-1].labels)))
+        return tuple(irrep for irrep in site.support() if sum(irrep.labels) <= farthest)
+    return tuple(basis[0].group.irreps(farthest))
