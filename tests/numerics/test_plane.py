@@ -161,20 +161,27 @@ def test_the_blas_limit_holds_until_whoever_set_it_leaves():
 
 
 COARSE = {
-    "far from normal": (EMBER, ("t", "z"), (1.1, 2.0), (0.5, 1.0), {}),
-    "weak coupling, mergers": (EMBER, ("t", "z"), (0.3, 0.6), (0.3, 0.5), {}),
-    "antiparticles": (EMBER_BOTH, ("z", "zbar"), (0.2, 0.5), (0.05, 0.1), {"t": 0.9}),
-    "a complex fugacity": (EMBER_BOTH, ("t", "zbar"), (0.8, 1.2), (0.05, 0.2), {"z": 0.3 * np.exp(0.4j)}),
+    "far from normal": (EMBER, ("t", "z"), (1.1, 2.0), (0.5, 1.0), {}, (6, 7)),
+    "weak coupling, mergers": (EMBER, ("t", "z"), (0.3, 0.6), (0.3, 0.5), {}, (6, 7)),
+    "antiparticles": (EMBER_BOTH, ("z", "zbar"), (0.2, 0.5), (0.05, 0.1), {"t": 0.9}, (6, 7)),
+    "a complex fugacity": (
+        EMBER_BOTH,
+        ("t", "zbar"),
+        (0.8, 1.2),
+        (0.05, 0.2),
+        {"z": 0.3 * np.exp(0.4j)},
+        (5, 6),
+    ),
 }
 
 
 @pytest.mark.parametrize("name", COARSE)
 def test_radii_hold_where_subspaces_are_interpolated_coarsely(name):
     """Against LAPACK at every point; a radius a hundred times too large would say nothing either."""
-    model, names, *ends, fixed = COARSE[name]
+    model, names, *ends, fixed, nodes = COARSE[name]
     axes = np.linspace(*ends[0], 30), np.linspace(*ends[1], 30)
     plane = Plane(model, 7, names, axes, fixed, 4, 1e-3)
-    coarse = frames._frames(plane, (5, 6))
+    coarse = frames._frames(plane, nodes)
     values, radius, _ = frames._everywhere(plane, replace(coarse, swell=frames._swell(plane, coarse)))
     assert np.isfinite(radius).mean() > 0.5
     first, second = (grid.reshape(-1) for grid in np.meshgrid(*axes, indexing="ij"))
