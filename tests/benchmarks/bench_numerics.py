@@ -136,9 +136,12 @@ def bench_map() -> tuple[list[Row], dict[str, Any]]:
     model, points = ember(), MAP_POINTS
     z, t = np.linspace(0.01, 1.0, points), np.linspace(0.2, 2.0, points)
     model.scan(z=z[:3], t=t[:3], levels=4, tolerance=TOLERANCE, progress=False)  # imports
-    start, before = perf_counter(), cpu_seconds()
-    table = model.scan(z=z, t=t, levels=4, tolerance=TOLERANCE, progress=False)
-    ours, ours_cpu = perf_counter() - start, cpu_seconds() - before
+    times, before = [], cpu_seconds()
+    for _ in range(4):
+        start = perf_counter()
+        table = model.scan(z=z, t=t, levels=4, tolerance=TOLERANCE, progress=False)
+        times.append(perf_counter() - start)
+    ours, ours_cpu = median(times[1:]), (cpu_seconds() - before) / len(times)
     masses = (table["mass_real"] + 1j * table["mass_imaginary"]).transpose("t", "z", "level").values
     relative = table["error"].transpose("t", "z", "level").values / np.abs(masses)
     cutoff = max(plain_cutoff(0.2, float(value)) for value in np.linspace(0.05, 1.0, 20))
@@ -152,6 +155,7 @@ def bench_map() -> tuple[list[Row], dict[str, Any]]:
     apart = multiset_distance(masses[rows].reshape(-1, 3), plain_masses(cutoff, sample_t, sample_z))
     missed = float((relative > TOLERANCE).mean())
     found = {
+        "first_seconds": times[0],
         "seconds": ours,
         "plain_seconds": one,
         "plain_seconds_on_threads": many,
@@ -171,7 +175,7 @@ def bench_map() -> tuple[list[Row], dict[str, Any]]:
     name = f"{points} × {points} map in (z, t), 3 masses"
     script = f"plain script, {found['plain_irreps']} irreps ({len(sample_t):,} points, scaled)"
     return [
-        (name, f"{ours:.2f} s", f"error ≤ {relative.max():.1e}", "1"),
+        (name, f"{ours:.2f} s", f"first time {times[0]:.2f} s", "1"),
         (script, f"{one:.1f} s", "aim 10 times slower", f"{one / ours:.1f}"),
         (f"its stacks handed to {CORES} threads by hand", f"{many:.1f} s", "", f"{many / ours:.1f}"),
         (
@@ -180,7 +184,7 @@ def bench_map() -> tuple[list[Row], dict[str, Any]]:
             f"plain {plain_cpu:.1f} s",
             f"{plain_cpu / ours_cpu:.1f}",
         ),
-        ("masses above the tolerance", f"{missed:.2%}", "0 %", "-"),
+        ("masses above the tolerance", f"{missed:.2%}", f"error ≤ {relative.max():.1e}", "-"),
         (
             "distance to the plain script, median and largest",
             f"{np.median(apart):.1e}",
@@ -342,7 +346,7 @@ def pool(workers: int) -> ProcessPoolExecutor:
 
 
 def bench_scan() -> tuple[list[Row], dict[str, Any]]:
-    model, points, times = ember(), 192, {}
+    model, points, times = ember(), 384, {}
     for workers in (1, 2):
         with pool(workers) as executor:
             _warm(executor, model, workers)
@@ -362,7 +366,7 @@ def bench_scan() -> tuple[list[Row], dict[str, Any]]:
 def bench_dask() -> tuple[list[Row], dict[str, Any]]:
     from dask.distributed import Client, LocalCluster
 
-    model, points = ember(), 192
+    model, points = ember(), 384
     with pool(2) as executor:
         _warm(executor, model, 2)
         plain = min(_scan_seconds(executor, model, points) for _ in range(2))

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import permutations
 from typing import Any
 
 import numpy as np
@@ -83,23 +84,18 @@ def group_numbers(
     partner = np.take(vectors, order, axis=0)
     if factors is not None:
         partner = partner * factors
-    inverse = _inverse(_products(partner, vectors))
-    block = np.einsum("acp,cdp->adp", inverse, _products(partner, images))
+    inverse, block = _solved(_products(partner, vectors), _products(partner, images))
     residual = images - np.einsum("cap,ncp->nap", block, vectors)
-    block, mixed = _decoupled(block, groups)
+    diagonal, coupling, mixed = _decoupled(block, groups)
     right, up, rest = (
         np.array([_size(array[:, group]) for group in groups]) for array in (vectors, beyond, residual)
     )
-    turned, inner = (
-        np.array([[_size(array[one, other]) for other in groups] for one in groups])
-        for array in (inverse, block)
-    )
+    turned = np.array([[_size(inverse[one, other]) for other in groups] for one in groups])
     left, down, left_rest = (np.einsum("abp,bp->ap", turned, norms) for norms in (right, up, rest))
-    coupling = inner * np.swapaxes(inner, 0, 1)
     found = []
-    for place, group in enumerate(groups):
-        values = _block_values(block[group, group])
-        departure = np.maximum(inner[place, place] ** 2 - (np.abs(values) ** 2).sum(axis=0), 0.0)
+    for place, own in enumerate(diagonal):
+        values = _block_values(own)
+        departure = np.maximum(_size(own) ** 2 - (np.abs(values) ** 2).sum(axis=0), 0.0)
         coupling[place, place] = np.where(mixed < MIXED, 0.0, np.inf)
         found.append(
             GroupNumbers(
@@ -117,24 +113,58 @@ def group_numbers(
     return found
 
 
-def _decoupled(block: NDArray[Any], groups: Sequence[slice]) -> tuple[NDArray[Any], NDArray[np.float64]]:
-    """(1 + X)⁻¹ B (1 + X) with X chosen so that the blocks between groups all but vanish, and ‖X‖.
+def _decoupled(
+    block: NDArray[Any], groups: Sequence[slice]
+) -> tuple[list[NDArray[Any]], NDArray[np.float64], NDArray[np.float64]]:
+    """Diagonal blocks of (1 + X)⁻¹ B (1 + X) to second order, how others couple to them, and ‖X‖.
 
-    X_ab = B_ab/(mean of b − mean of a) solves for it to first order where the levels of a group are close
-    together. X is as small as the interpolation error, so that norms of vectors stay what they were.
+    X_ab = B_ab/(mean of b − mean of a) makes the blocks between groups vanish where the levels of a group
+    are close together; what is left of them is O_ab = B_ab + B_aa X_ab − X_ab B_bb. X is as small as the
+    interpolation error, so that norms of vectors stay what they were.
+
+    Returns
+    -------
+    Blocks of shape (s, s, M); ‖O_ab‖ ‖O_ba‖ of shape (g, g, M); ‖X‖ of shape (M,).
     """
-    if len(groups) == 1:
-        return block, np.zeros(block.shape[-1])
-    means = [np.einsum("aap->p", block[group, group]) / (group.stop - group.start) for group in groups]
-    turn = np.zeros_like(block)
+    points, count = block.shape[-1], len(groups)
+    parts = [[block[one, other] for other in groups] for one in groups]
+    means = [np.einsum("aap->p", parts[a][a]) / len(parts[a][a]) for a in range(count)]
+    mixed = np.zeros(points)
+    turn: list[list[Any]] = [[None] * count for _ in groups]
+    open_: list[list[Any]] = [[None] * count for _ in groups]
     with np.errstate(divide="ignore", invalid="ignore"):
-        for one, group in enumerate(groups):
-            for other, foreign in enumerate(groups):
-                if one != other:
-                    turn[group, foreign] = block[group, foreign] / (means[other] - means[one])
-    moved = block + np.einsum("acp,cdp->adp", block, turn)
-    change = np.einsum("acp,cdp->adp", turn, moved)
-    return moved - change + np.einsum("acp,cdp->adp", turn, change), _size(turn)
+        for a, b in permutations(range(count), 2):
+            turn[a][b] = parts[a][b] / (means[b] - means[a])
+            open_[a][b] = parts[a][b] + _times(parts[a][a], turn[a][b]) - _times(turn[a][b], parts[b][b])
+            mixed += _size(turn[a][b]) ** 2
+    coupling = np.zeros((count, count, points))
+    diagonal = [parts[a][a] for a in range(count)]
+    for a, b in permutations(range(count), 2):
+        diagonal[a] = diagonal[a] + _times(parts[a][b], turn[b][a]) - _times(turn[a][b], open_[b][a])
+        coupling[a, b] = _size(open_[a][b]) * _size(open_[b][a])
+    return diagonal, coupling, np.sqrt(mixed)
+
+
+def _times(left: NDArray[Any], right: NDArray[Any]) -> NDArray[Any]:
+    """Products of matrices, points last."""
+    if left.shape[1] == 1:
+        return np.asarray(left * right)
+    return np.einsum("acp,cdp->adp", left, right)
+
+
+def _solved(overlap: NDArray[Any], element: NDArray[Any]) -> tuple[NDArray[Any], NDArray[Any]]:
+    """O⁻¹ and O⁻¹ E of m × m matrices, shape (m, m, M) each; infinite where O is singular."""
+    count = len(overlap)
+    unit = np.broadcast_to(np.eye(count), (overlap.shape[-1], count, count))
+    right = np.concatenate([unit, np.moveaxis(element, 2, 0)], axis=2)
+    try:
+        found = np.linalg.solve(np.moveaxis(overlap, 2, 0), right)
+    except np.linalg.LinAlgError:
+        regular = np.linalg.cond(np.moveaxis(overlap, 2, 0)) < 1e15
+        found = np.full(right.shape, np.inf, dtype=right.dtype)
+        found[regular] = np.linalg.solve(np.moveaxis(overlap, 2, 0)[regular], right[regular])
+    turned = np.ascontiguousarray(np.moveaxis(found, 0, 2))
+    return turned[:, :count], turned[:, count:]
 
 
 def _products(left: NDArray[Any], right: NDArray[Any]) -> NDArray[Any]:
@@ -146,17 +176,6 @@ def _size(array: NDArray[Any]) -> NDArray[np.float64]:
     """Frobenius norms over the first two axes, shape (M,)."""
     partner = array.conj() if np.iscomplexobj(array) else array
     return np.asarray(np.sqrt(np.einsum("ijp,ijp->p", array, partner).real))
-
-
-def _inverse(matrix: NDArray[Any]) -> NDArray[Any]:
-    """Inverses of s × s matrices, shape (s, s, M)."""
-    with np.errstate(divide="ignore", invalid="ignore"):
-        if len(matrix) == 1:
-            return np.asarray(1 / matrix)
-        if len(matrix) > 2:
-            return np.moveaxis(np.linalg.inv(np.moveaxis(matrix, 2, 0)), 0, 2)
-        (a, b), (c, d) = matrix
-        return np.asarray(np.array([[d, -b], [-c, a]]) / (a * d - b * c))
 
 
 def _block_values(block: NDArray[Any]) -> NDArray[np.complex128]:
