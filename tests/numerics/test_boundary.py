@@ -295,3 +295,12 @@ def test_a_curve_longer_than_most_points_says_that_it_is_incomplete():
     boundary = EMBER.complex_boundary(z=(0.1, 0.95), t=(0.35, 2.0), step=0.05, lines=1, most_points=5)
     assert boundary.curves
     assert not any(curve.complete for curve in boundary.curves)
+
+
+def test_a_boundary_is_drawn_with_its_turning_points():
+    boundary = EMBER.complex_boundary(z=(0.2, 0.9), t=(0.5, 1.5))
+    face = boundary._repr_html_()
+    assert face.count("<path") == len(boundary.curves) == 1
+    assert face.count(">fold<") == 1
+    assert ">z<" in face
+    assert ">t<" in face

@@ -78,6 +78,7 @@ def test_symbolic_and_numeric_couplings_agree():
 @pytest.mark.parametrize("fixed", [{}, {"t": 1}], ids=["symbolic t", "t = 1"])
 def test_compared_with_numbers_on_request(fixed):
     compared = EMBER.series("z", order=4, levels=3, **fixed).compare(z=0.1, t=1)
+    assert "which falls like the power" in compared._repr_html_()
     assert np.abs(compared.difference).max() < 2e-3
     assert np.isfinite(compared.measured_order).all()
     assert (compared.measured_order > np.array([float(p) for p in compared.expected_order]) - 0.3).all()

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from fractions import Fraction
 from itertools import pairwise
 
@@ -10,6 +11,7 @@ import pytest
 from haarloom.exceptions import ParameterError
 from haarloom.numerics.certify import UNDECIDED
 from haarloom.numerics.stretches import certified_stretches
+from haarloom.numerics.verdicts import PAIR, REAL
 from numerics.models import EMBER
 
 MERGER = Fraction("0.410100451151161811432775774862")
@@ -63,3 +65,18 @@ def test_a_finest_length_is_positive(finest):
 def test_an_empty_line_is_refused():
     with pytest.raises(ParameterError, match="is empty"):
         certified_stretches(EMBER, "z", "0.5", "0.3", t=1)
+
+
+def test_stretches_are_drawn_and_named_in_a_notebook():
+    stretches = EMBER.certified_stretches("z", "0.3", "0.5", finest="0.05", t=1)
+    assert [stretch.verdict for stretch in stretches] == [PAIR, UNDECIDED, REAL]
+    assert stretches[0].interval.lower == Fraction(3, 10)
+    assert len(stretches[1:]) == 2
+    text, face = str(stretches), stretches._repr_html_()
+    assert text.startswith("Proven of m_1 along z at t = 1:")
+    # one band for each stretch, one field of the legend for each verdict, and the frame
+    assert face.count("<rect") == 3 + 3 + 1
+    widths = [float(width) for width in re.findall(r'width="([0-9.]+)" height="28"', face)]
+    lengths = [float(stretch.interval.width) for stretch in stretches]
+    assert widths[:3] == pytest.approx([widths[3] * length / 0.2 for length in lengths], abs=0.02)
+    assert all(stretch.verdict in face for stretch in stretches)

@@ -11,10 +11,11 @@ from html import escape
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["heat_picture", "line_picture", "table_html"]
+__all__ = ["band_picture", "heat_picture", "line_picture", "plane_picture", "table_html"]
 
 _WIDTH, _HEIGHT, _SQUARE, _LEFT, _BOTTOM, _TOP, _RIGHT = 420, 260, 340, 64, 44, 14, 14
 _DASHES = ("none", "6 3", "2 3", "8 3 2 3")
+_BAND, _SHADES = 28, (0.0, 0.3, 1.0)
 _BLUE, _RED = (42, 102, 184), (186, 44, 44)
 
 
@@ -87,6 +88,63 @@ def heat_picture(
     return _svg(width, _SQUARE, f"map over {across} and {up}", body + marks + frame.axes(across, up))
 
 
+def band_picture(bands: Sequence[tuple[float, float, str]], across: str, kinds: Sequence[str]) -> str:
+    """Stretches of one axis as SVG text, told apart by how dark they are, with a legend.
+
+    Parameters
+    ----------
+    bands : sequence of (from, to, what)
+        In order.
+    kinds : sequence of str
+        What there is: the first stays empty, the second is grey, any other dark.
+    """
+    height = _TOP + _BAND + _BOTTOM
+    frame = _Frame(bands[0][0], bands[-1][1], 0.0, 1.0, height=height)
+    body = ""
+    for start, stop, what in bands:
+        left, right = frame.place(start, 0.0)[0], frame.place(stop, 0.0)[0]
+        opacity = _SHADES[min(kinds.index(what), len(_SHADES) - 1)]
+        body += (
+            f'<rect x="{left:.2f}" y="{_TOP}" width="{max(right - left, 1.0):.2f}" height="{_BAND}" '
+            f'fill="currentColor" fill-opacity="{opacity}"><title>{escape(what)}</title></rect>'
+        )
+    x, y = 10, height + 12
+    for place, what in enumerate(kinds):
+        opacity = _SHADES[min(place, len(_SHADES) - 1)]
+        body += (
+            f'<rect x="{x}" y="{y - 9}" width="14" height="9" stroke="currentColor" '
+            f'fill="currentColor" fill-opacity="{opacity}"/>' + _text(x + 20, y, what, "start")
+        )
+        x += 44 + 6 * len(what)
+    return _svg(_WIDTH, height + 18, f"stretches of {across}", body + frame.axes(across, ""))
+
+
+def plane_picture(
+    curves: Sequence[NDArray[np.float64]],
+    corners: tuple[float, float, float, float],
+    across: str,
+    up: str,
+    marks: Sequence[tuple[float, float, str]] = (),
+) -> str:
+    """Curves in a plane as SVG text.
+
+    Parameters
+    ----------
+    curves : sequence of ndarray, shape (M, 2)
+    corners : tuple
+        Left, right, bottom, top of the axes.
+    marks : sequence of (x, y, name)
+        Points drawn as dots, with their names.
+    """
+    frame = _Frame(*corners)
+    body = "".join(_path(frame, curve[:, 0], curve[:, 1], "none") for curve in curves)
+    for x, y, name in marks:
+        px, py = frame.place(x, y)
+        body += f'<circle cx="{px:.2f}" cy="{py:.2f}" r="3" fill="currentColor"/>'
+        body += _text(px + 6, py - 5, name, "start")
+    return _svg(_WIDTH, _HEIGHT, f"curves over {across} and {up}", body + frame.axes(across, up))
+
+
 def _png(pixels: NDArray[np.uint8]) -> bytes:
     """Pixels (rows, columns, 4) of red, green, blue and opacity as a PNG file (ISO/IEC 15948)."""
     rows = b"".join(b"\0" + row.tobytes() for row in pixels)
@@ -101,9 +159,17 @@ def _png(pixels: NDArray[np.uint8]) -> bytes:
 class _Frame:
     """The axes' rectangle and the map from numbers to places in it; square where a side is given."""
 
-    def __init__(self, left: float, right: float, low: float, high: float, side: int | None = None) -> None:
+    def __init__(
+        self,
+        left: float,
+        right: float,
+        low: float,
+        high: float,
+        side: int | None = None,
+        height: int = _HEIGHT,
+    ) -> None:
         self.left, self.right, self.low, self.high = left, right, low, high
-        self.height = (side or _HEIGHT) - _BOTTOM - _TOP
+        self.height = (side or height) - _BOTTOM - _TOP
         self.width = self.height if side else _WIDTH - _LEFT - _RIGHT
 
     def place(self, x: float, y: float) -> tuple[float, float]:
@@ -119,7 +185,8 @@ class _Frame:
             x, y = self.left + share * (self.right - self.left), self.low + share * (self.high - self.low)
             px, py = self.place(x, y)
             marks.append(_text(px, bottom + 16, f"{x:.3g}", "middle"))
-            marks.append(_text(_LEFT - 6, py + 4, f"{y:.3g}", "end"))
+            if up:
+                marks.append(_text(_LEFT - 6, py + 4, f"{y:.3g}", "end"))
         middle = _TOP + self.height / 2
         marks.append(_text(_LEFT + self.width / 2, bottom + 36, across, "middle"))
         marks.append(f'<g transform="rotate(-90 14 {middle})">{_text(14, middle, up, "middle")}</g>')

@@ -100,6 +100,25 @@ class ComplexBoundary:
             f"cutoff {self.cutoff}{open_ends})"
         )
 
+    def _repr_html_(self) -> str:
+        from html import escape
+
+        from haarloom.actions.pictures import plane_picture
+
+        cusps = [(*curve.points[place], "cusp") for curve in self.curves for place in curve.cusps]
+        sizes = np.array([upper - lower for lower, upper in self.box])
+        folds = [
+            (*point, "fold")
+            for curve in self.curves
+            for point in curve.points[[*curve.folds[0], *curve.folds[1]]]
+            # one as close to a tip as its name is long would only cover it
+            if all(np.linalg.norm((point - cusp[:2]) / sizes) > 0.03 for cusp in cusps)
+        ]
+        marks = [*cusps, *folds]
+        corners = (*self.box[0], *self.box[1])
+        picture = plane_picture([curve.points for curve in self.curves], corners, *self.axes, marks)
+        return f"{picture}<p>{escape(repr(self))}</p>"
+
 
 @single_threaded
 def complex_boundary(

@@ -41,7 +41,7 @@ class LevelSeries:
         Coefficients by power of the parameter; half-integer powers where levels start degenerate.
         ``mass`` is empty for the ground level.
     neglected
-        Power of the first term that was left out.
+        Power from which on terms were left out; the coefficient of that one may vanish.
     """
 
     parameter: sympy.Symbol
@@ -79,8 +79,8 @@ class SeriesComparison:
     series, numbers, difference
         Masses from the series and from :func:`haarloom.numerics.spectrum.spectrum`, shape (L − 1,).
     measured_order
-        Power with which the difference falls when the parameter is halved; close to ``expected_order``,
-        the first neglected term, for a small parameter.
+        Power with which the difference falls when the parameter is halved. For a small parameter it is
+        ``expected_order``, the power from which on terms were left out, or more if that one vanishes.
     """
 
     values: Mapping[str, float | complex]
@@ -89,6 +89,20 @@ class SeriesComparison:
     difference: np.ndarray
     measured_order: np.ndarray
     expected_order: tuple[Fraction, ...]
+
+    def _repr_html_(self) -> str:
+        from haarloom.numerics.faces import table_html
+
+        columns = zip(
+            self.series, self.numbers, self.difference, self.measured_order, self.expected_order, strict=True
+        )
+        rows = [
+            (str(n), f"{mine:.10g}", f"{theirs:.10g}", f"{abs(apart):.1e}", f"{found:.2f}", str(expected))
+            for n, (mine, theirs, apart, found, expected) in enumerate(columns, start=1)
+        ]
+        point = ", ".join(f"{name} = {value:.6g}" for name, value in self.values.items())
+        head = ("n", "series", "numbers", "apart by", "which falls like the power", "left out from")
+        return table_html(f"Masses at {point}", head, rows, "")
 
 
 @dataclass(frozen=True, eq=False)
@@ -107,6 +121,9 @@ class MassSeries:
     parameter: sympy.Symbol
     order: int
     levels: tuple[LevelSeries, ...]
+
+    def __repr__(self) -> str:
+        return f"MassSeries({self.parameter} to order {self.order}; {len(self.levels) - 1} masses)"
 
     @property
     def masses(self) -> tuple[sympy.Expr, ...]:

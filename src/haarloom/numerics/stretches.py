@@ -8,22 +8,23 @@ its ends by pieces that shrink with d.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import groupby
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, overload
 
 from haarloom.exceptions import ParameterError
 from haarloom.numerics.balls import Interval, as_exact
-from haarloom.numerics.certify import UNDECIDED, attempt, prepared
+from haarloom.numerics.certify import UNDECIDED, attempt, prepared, values_text
 from haarloom.numerics.cutoff import checked_levels
 from haarloom.numerics.threads import single_threaded
+from haarloom.numerics.verdicts import PAIR, REAL
 
 if TYPE_CHECKING:
     from haarloom.ring.model import RingModel
 
-__all__ = ["Stretch", "certified_stretches"]
+__all__ = ["ProvenStretches", "Stretch", "certified_stretches"]
 
 BITS = 64
 """Working precision: the width of a piece outweighs rounding by far."""
@@ -46,6 +47,62 @@ class Stretch:
         return f"{self.interval}: {self.verdict}"
 
 
+@dataclass(frozen=True)
+class ProvenStretches(Sequence[Stretch]):
+    """Stretches of a line in order, each with what is proven on all of it; in a notebook a picture.
+
+    Attributes
+    ----------
+    stretches
+        Neighbours of one verdict are joined; together they cover the line.
+    parameter, level
+        What varies, and which mass: 1 is the lowest.
+    values
+        The other parameters, exact.
+    """
+
+    stretches: tuple[Stretch, ...]
+    parameter: str
+    level: int
+    values: Mapping[str, Any]
+
+    @overload
+    def __getitem__(self, place: int) -> Stretch: ...
+    @overload
+    def __getitem__(self, place: slice) -> tuple[Stretch, ...]: ...
+    def __getitem__(self, place: int | slice) -> Stretch | tuple[Stretch, ...]:
+        return self.stretches[place]
+
+    def __len__(self) -> int:
+        return len(self.stretches)
+
+    def __str__(self) -> str:
+        lines = [f"  {_ends(stretch.interval)}: {stretch.verdict}" for stretch in self]
+        return "\n".join([f"{self._title}:", *lines])
+
+    __repr__ = __str__
+
+    @property
+    def _title(self) -> str:
+        others = f" at {values_text(self.values)}" if self.values else ""
+        return f"Proven of m_{self.level} along {self.parameter}{others}"
+
+    def _repr_html_(self) -> str:
+        from haarloom.actions.pictures import band_picture, table_html
+
+        known = [REAL, PAIR, UNDECIDED]
+        order = sorted({stretch.verdict for stretch in self}, key=lambda word: known.index(word))
+        bands = [(float(s.interval.lower), float(s.interval.upper), s.verdict) for s in self]
+        rows = [(_ends(stretch.interval), stretch.verdict) for stretch in self]
+        return band_picture(bands, self.parameter, order) + table_html(
+            (self.parameter, "proven on all of it"), rows, self._title, words=True
+        )
+
+
+def _ends(interval: Interval) -> str:
+    return f"{float(interval.lower):.10g} … {float(interval.upper):.10g}"
+
+
 Judge = Callable[[Interval], Stretch]
 
 
@@ -58,7 +115,7 @@ def certified_stretches(
     level: int = 1,
     finest: Any = Fraction(1, 1000),
     **values: Any,
-) -> tuple[Stretch, ...]:
+) -> ProvenStretches:
     """Cut an interval into stretches with a proven verdict for one level.
 
     Parameters
@@ -77,7 +134,7 @@ def certified_stretches(
 
     Returns
     -------
-    Stretches in order, neighbours of one verdict joined; together they cover the interval.
+    The stretches in order, with a picture for a notebook.
 
     Raises
     ------
@@ -95,7 +152,9 @@ def certified_stretches(
         return Stretch(piece, found.levels[-1].verdict)
 
     coarse = _joined(_halved(judged, judged(whole), smallest))
-    return tuple(_joined(part for stretch in coarse for part in _sharpened(judged, stretch, smallest)))
+    parts = _joined(part for stretch in coarse for part in _sharpened(judged, stretch, smallest))
+    others = {name: value for name, value in exact.items() if name != parameter}
+    return ProvenStretches(tuple(parts), parameter, count - 1, others)
 
 
 def _halved(judged: Judge, stretch: Stretch, finest: Fraction) -> Iterator[Stretch]:

@@ -22,6 +22,7 @@ if TYPE_CHECKING:
     from haarloom.numerics.exceptional import ExceptionalPoint
     from haarloom.numerics.series import MassSeries
     from haarloom.numerics.spectrum import Spectrum
+    from haarloom.numerics.stretches import ProvenStretches
 
 __all__ = ["RingModel"]
 
@@ -154,6 +155,17 @@ class RingModel:
         from haarloom.numerics.certify import certify
 
         return certify(self, digits=digits, **options_and_values)
+
+    def certified_stretches(
+        self, parameter: str, lower: Any, upper: Any, **options_and_values: Any
+    ) -> ProvenStretches:
+        """An interval of one parameter cut into stretches with a proven verdict for one level.
+
+        See :func:`haarloom.numerics.stretches.certified_stretches` for the options and what is raised.
+        """
+        from haarloom.numerics.stretches import certified_stretches
+
+        return certified_stretches(self, parameter, lower, upper, **options_and_values)
 
     def series(
         self, parameter: str | sympy.Symbol, order: int = 6, levels: int = 3, **values: Any
