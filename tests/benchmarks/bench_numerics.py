@@ -18,7 +18,6 @@ import json
 import os
 import subprocess
 import sys
-from collections.abc import Callable
 from concurrent.futures import Executor, ProcessPoolExecutor, ThreadPoolExecutor
 from functools import partial
 from multiprocessing import get_context
@@ -31,6 +30,8 @@ import numpy as np
 
 ROOT = Path(__file__).parents[2]
 sys.path.insert(0, str(ROOT / "src"))
+
+from plain_script import plain_matrices, plain_tables, timed  # noqa: E402
 
 import haarloom as hl  # noqa: E402
 
@@ -51,17 +52,6 @@ def sister(n: int) -> hl.RingModel:
     return hl.RingModel(hl.heat_kernel(G, "t"), hl.static_fermions(G, "z"))
 
 
-def timed(job: Callable[[], Any], repeats: int) -> float:
-    """Median time of a job that has run once before."""
-    job()
-    times = []
-    for _ in range(repeats):
-        start = perf_counter()
-        job()
-        times.append(perf_counter() - start)
-    return median(times)
-
-
 def cpu_seconds() -> float:
     """Processor time of this process and its finished children: steadier than a clock on a shared machine."""
     times = os.times()
@@ -76,26 +66,9 @@ def exponent(sizes: list[int], times: list[float]) -> float:
 # the plain script --------------------------------------------------------------------------------------
 
 
-def plain_tables(cutoff: int) -> tuple[np.ndarray, np.ndarray]:
-    """Casimirs, and which elements hold z: neighbours by one box. The transpose holds z²."""
-    labels = [(p, level - p) for level in range(cutoff + 1) for p in range(level, -1, -1)]
-    place = {pair: i for i, pair in enumerate(labels)}
-    casimir = np.array([(p * p + q * q + p * q) / 3 + p + q for p, q in labels])
-    up = np.zeros((len(labels),) * 2)
-    for (p, q), column in place.items():
-        for row in ((p + 1, q), (p - 1, q + 1), (p, q - 1)):
-            if row in place:
-                up[place[row], column] = 1
-    return casimir, up
-
-
 def plain_masses(cutoff: int, t: np.ndarray, z: np.ndarray, levels: int = 4) -> np.ndarray:
     """Masses at many points, shape (M, levels − 1)."""
-    casimir, up = plain_tables(cutoff)
-    roots = np.exp(-t[:, None] / 2 * casimir)
-    z = z[:, None, None]
-    site = (1 + z**3) * np.eye(len(casimir)) + z * up + z**2 * up.T
-    values = np.linalg.eigvals(roots[:, :, None] * site * roots[:, None, :])
+    values = np.linalg.eigvals(plain_matrices(plain_tables(cutoff), t, z))
     order = np.argsort(-np.abs(values), axis=1)[:, :levels]
     leading = np.take_along_axis(values, order, axis=1)
     return -np.log(leading[:, 1:].astype(complex) / leading[:, :1])
@@ -235,18 +208,12 @@ def bench_weak() -> tuple[list[Row], dict[str, Any]]:
         )
     start = perf_counter()
     got = found["t = 0.002, z = 0.3, six masses, cutoff 101"]
-    values = np.linalg.eigvals(_plain_matrix(60, 0.002, 0.3))
+    values = np.linalg.eigvals(plain_matrices(plain_tables(60), np.array([0.002]), np.array([0.3])))[0]
     plain = (perf_counter() - start) * (got["irreps"] / 1891) ** 3
     rows.append(("plain script, one dense matrix of that size (scaled n³)", f"{plain:.0f} s", "", "1"))
     found["plain_seconds_scaled"] = plain
     found["plain_levels"] = len(values)
     return rows, found
-
-
-def _plain_matrix(cutoff: int, t: float, z: float) -> np.ndarray:
-    casimir, up = plain_tables(cutoff)
-    root = np.exp(-t / 2 * casimir)
-    return root[:, None] * ((1 + z**3) * np.eye(len(root)) + z * up + z**2 * up.T) * root
 
 
 LADDERS = {3: (31, 44, 62, 99, 140, 200, 315), 4: (13, 18, 27, 40, 65), 5: (8, 10, 14, 19, 32)}

@@ -10,47 +10,17 @@ from __future__ import annotations
 
 import sys
 from pathlib import Path
-from statistics import median
 from time import perf_counter
 
 import numpy as np
 
 sys.path.insert(0, str(Path(__file__).parents[2] / "src"))
 
+from plain_script import plain_matrices, plain_tables, timed
+
 import haarloom as hl
 
 POINTS = 1000
-
-
-def plain_tables(cutoff: int) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
-    """Casimirs, and which elements hold z and which z²: neighbours by one box, or by one antibox."""
-    labels = [(p, level - p) for level in range(cutoff + 1) for p in range(level, -1, -1)]
-    place = {pair: i for i, pair in enumerate(labels)}
-    casimir = np.array([(p * p + q * q + p * q) / 3 + p + q for p, q in labels])
-    up = np.zeros((len(labels),) * 2)
-    for (p, q), column in place.items():
-        for row in ((p + 1, q), (p - 1, q + 1), (p, q - 1)):
-            if row in place:
-                up[place[row], column] = 1
-    return casimir, up, up.T.copy()
-
-
-def plain_numeric(tables, t: np.ndarray, z: np.ndarray) -> np.ndarray:
-    casimir, up, down = tables
-    roots = np.exp(-t[:, None] / 2 * casimir)
-    z = z[:, None, None]
-    site = (1 + z**3) * np.eye(len(casimir)) + z * up + z**2 * down
-    return roots[:, :, None] * site * roots[:, None, :]
-
-
-def timed(job, repeats: int) -> float:
-    job()
-    times = []
-    for _ in range(repeats):
-        start = perf_counter()
-        job()
-        times.append(perf_counter() - start)
-    return median(times)
 
 
 def cold_symbolic(cutoff: int) -> float:
@@ -70,9 +40,9 @@ def main() -> None:
     t, z = rng.uniform(0.5, 2, POINTS), rng.uniform(0, 1, POINTS)
     T = model.transfer_matrix(8)
     tables = plain_tables(8)
-    assert np.allclose(T.numeric(t=t, z=z), plain_numeric(tables, t, z), rtol=1e-13, atol=1e-18)
+    assert np.allclose(T.numeric(t=t, z=z), plain_matrices(tables, t, z), rtol=1e-13, atol=1e-18)
     ours = timed(lambda: T.numeric(t=t, z=z), 9) / POINTS
-    plain = timed(lambda: plain_numeric(tables, t, z), 9) / POINTS
+    plain = timed(lambda: plain_matrices(tables, t, z), 9) / POINTS
     single = timed(lambda: T.numeric(t=1.0, z=0.3), 30)
     print(f"{'job':58} {'time':>12} {'aim':>10} {'ratio to plain script':>22}")
     rows = [
