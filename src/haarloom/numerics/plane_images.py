@@ -110,9 +110,10 @@ def plane_parts(
             numbers.real,
         )
 
+    # as many parts for every thread
     threads = len(split(rows * columns, LEAST_POINTS))
-    fitting = NUMBERS // (frames.shape[2] * frames.shape[3] * columns)
-    step = max(1, min(fitting, ceil(rows / threads)))
+    fitting = max(1, NUMBERS // (frames.shape[2] * frames.shape[3] * columns))
+    step = ceil(rows / (threads * ceil(rows / (threads * fitting))))
     return [partial(at, start) for start in range(0, rows, step)]
 
 
