@@ -3,9 +3,10 @@
 Leading levels are grouped where |λ| drops clearly at every node of a patch. The invariant subspace of
 a group varies smoothly as long as the group stays apart from the others, through mergers inside it as
 well. It is computed densely at Chebyshev nodes, put into one gauge, and interpolated. At every point
-the pencil (Vᵀ ΦJ T V, Vᵀ ΦJ V) of a group gives its levels: because ΦJ maps right onto left vectors,
-the error of an eigenvalue is of second order in that of the subspace. A group of one or two levels
-needs no eigen-solver at all.
+the pencil (Vᵀ ΦJ T V, Vᵀ ΦJ V) of all groups is decoupled into one block for each, which gives its
+levels: because ΦJ maps right onto left vectors, the error of an eigenvalue is of second order in that
+of the subspace. A group of one or two levels needs no eigen-solver at all. Points that miss the
+tolerance are corrected (:mod:`haarloom.numerics.corrections`), and solved densely if that is not enough.
 """
 
 from __future__ import annotations

@@ -38,7 +38,9 @@ def scan(
         Eigenvalues at each point, the ground level included.
     tolerance
         Relative error of the masses that cutoffs are chosen for; ``error`` in the result is the bound
-        at each point, whether met or not.
+        at each point, whether met or not. Where points are solved together from interpolated subspaces it
+        counts their residuals to second order, with a resolvent of the other levels that is measured at
+        some points; ``certify`` gives proofs.
     executor
         Any ``concurrent.futures.Executor``: a process pool, ``client.get_executor()`` of a Dask
         cluster. Left out, this process does the work on all cores, and shares it with worker processes
