@@ -44,9 +44,9 @@ def checked_values(model: RingModel, values: Mapping[str, Any]) -> Values:
     for name in values:
         if name not in names:
             near = get_close_matches(name, names, n=1)
-            hint = f"; did you mean {near[0]}?" if near else ""
+            hint = f"did you mean {near[0]}?" if near else f"leave {name} out."
             allowed = ", ".join(names) or "no parameters at all"
-            raise ParameterError(f"{name!r} is no parameter of this model, which has {allowed}{hint}")
+            raise ParameterError(f"{name!r} is no parameter of this model, which has {allowed}; {hint}")
     return {name: _numbers(name, values[name]) for name in names}
 
 
@@ -58,7 +58,8 @@ def _numbers(name: str, given: Any) -> NDArray[Any]:
         array = array.astype(complex if array.dtype.kind == "c" else float)
     except (TypeError, ValueError, OverflowError):
         raise ParameterError(
-            f"{name} = {given!r} is no number: give a real or complex number, or an array of them."
+            f"{name} = {given!r} is no number: give a real or complex number, or an array of them "
+            "(text such as '3/10' is for certify, where numbers are exact)."
         ) from None
     if not np.isfinite(array).all():
         raise ParameterError(f"{name} = {given!r} is not finite: give finite numbers only.")
