@@ -210,3 +210,14 @@ def test_the_resolvent_of_what_is_left_out_is_measured(monkeypatch):
             largest = max(largest, np.linalg.norm(outside, 2) * (np.abs(level) - rest))
     assert frames._swell(plane, found) == pytest.approx(largest, rel=1e-8)
     assert largest > 1.05, "the example is too near to normal"
+
+
+def test_nothing_is_said_where_levels_of_two_groups_meet():
+    plane = plane_of("one axis each", 40, 40, cutoff=4)
+    found = frames._frames(plane, (5, 5))
+    twice = found.vectors.copy()
+    twice[:, :, 1] = twice[:, :, 0]
+    broken = replace(found, vectors=twice)
+    assert frames._swell(plane, broken) == np.inf
+    _, radius, _ = frames._everywhere(plane, replace(broken, swell=np.inf))
+    assert np.isinf(radius).all()

@@ -7,6 +7,7 @@ import os
 import warnings
 from concurrent.futures import BrokenExecutor, Executor, Future, ProcessPoolExecutor, ThreadPoolExecutor
 from multiprocessing import get_context
+from types import SimpleNamespace
 
 import numpy as np
 import pytest
@@ -16,7 +17,8 @@ import haarloom as hl
 from haarloom.exceptions import DocumentError, MissingValueError, ParameterError, ScanError
 from haarloom.numerics import scan_run, scan_workers
 from haarloom.numerics.scan_chunk import solve_chunk
-from haarloom.numerics.scan_table import read_scan, save_scan, scan_masses, verdict_table
+from haarloom.numerics.scan_grid import scan_grid
+from haarloom.numerics.scan_table import empty_table, read_scan, save_scan, scan_masses, verdict_table
 from haarloom.numerics.verdicts import VERDICTS
 from numerics import referees
 from numerics.models import EMBER, EMBER_BOTH, SU3, TINTED
@@ -447,3 +449,16 @@ def test_masses_of_a_scan_and_of_the_line_agree():
     line = masses_along(EMBER, "z", z, levels=4, cutoff=8, t=1.0)
     for row in range(len(z)):
         assert referees.distance(scan_masses(table).values[row], line.masses[row]) <= 1e-9
+
+
+@pytest.mark.parametrize("cost", [1e-4, 1e-2, 0.1, 0.3])
+def test_no_chunk_runs_for_long_without_being_kept(cost):
+    """Seconds of the next chunk at the measured cost of a point; dense points say little about whole rows."""
+    grid = scan_grid(EMBER, {"z": np.linspace(0.1, 0.9, 400), "t": np.linspace(0.5, 1.5, 400)}, 4, 1e-10)
+    for points, most in ((8, 120.0), (32 * 400, 30.0)):
+        run = scan_run.ScanRun(grid, empty_table(grid), None)
+        chunk = SimpleNamespace(points=points)
+        run._resize(SimpleNamespace(chunk=chunk, seconds=cost * points, together=True))
+        assert run.rows * run.columns * cost <= most
+        assert run.rows == 32 or cost < 1e-3
+        assert run.columns >= 32 or cost > 0.02, "too small for warm starts"

@@ -43,7 +43,7 @@ def corrected(
 
     Returns
     -------
-    Shape (M, n, m). Not finite where the bordered matrix is singular.
+    Shape (M, n, m); as given where some bordered matrix of the stack is singular.
     """
     phase, mirror = dual
     found = np.empty_like(vectors)

@@ -228,7 +228,8 @@ def _swell(plane: Plane, frames: _Frames) -> float:
     """The largest ‖(λ − T)⁻¹‖ (|λ| − rest) on what the groups leave out, at corners and in the middle.
 
     The inverse restricted to it is the upper left block of the inverse of the bordered matrix of
-    :mod:`haarloom.numerics.corrections`.
+    :mod:`haarloom.numerics.corrections`. Infinite where that is singular: a level of one group meets one
+    of another, and nothing can be said.
     """
     ends = [np.array([0, len(nodes) // 2, len(nodes) - 1]) for nodes in frames.nodes]
     rows, columns = ends[0][[0, 0, 1, 2, 2]], ends[1][[0, 2, 1, 0, 2]]
@@ -237,19 +238,22 @@ def _swell(plane: Plane, frames: _Frames) -> float:
     points, size, count = basis.shape
     mirror = conjugation(plane.model.group.rank, plane.cutoff)
     partner = np.swapaxes(batch.phase[:, :size, None] * basis[:, mirror], 1, 2)
-    block = np.linalg.solve(partner @ basis, partner @ (batch.matrix @ basis))
-    levels: NDArray[Any] = np.linalg.eigvals(block)
-    levels = np.take_along_axis(levels, np.argsort(-np.abs(levels), axis=1), axis=1)
-    rest = frames.rest * np.abs(levels[:, -1:])
-    leading = levels[:, : plane.levels]
-    kind = np.result_type(batch.matrix, leading)
-    bordered = np.zeros((points, leading.shape[1], size + count, size + count), dtype=kind)
-    bordered[:, :, :size, :size] = batch.matrix[:, None] - leading[:, :, None, None] * np.eye(size)
-    bordered[:, :, :size, size:] = basis[:, None]
-    bordered[:, :, size:, :size] = partner[:, None]
-    inverse = np.linalg.inv(bordered)[:, :, :size, :size]
-    reach = np.linalg.norm(inverse, 2, axis=(2, 3)) * (np.abs(leading) - rest)
-    return max(1.0, SPREAD * float(reach.max()))
+    try:
+        block = np.linalg.solve(partner @ basis, partner @ (batch.matrix @ basis))
+        levels: NDArray[Any] = np.linalg.eigvals(block)
+        levels = np.take_along_axis(levels, np.argsort(-np.abs(levels), axis=1), axis=1)
+        leading = levels[:, : plane.levels]
+        kind = np.result_type(batch.matrix, leading)
+        bordered = np.zeros((points, leading.shape[1], size + count, size + count), dtype=kind)
+        bordered[:, :, :size, :size] = batch.matrix[:, None] - leading[:, :, None, None] * np.eye(size)
+        bordered[:, :, :size, size:] = basis[:, None]
+        bordered[:, :, size:, :size] = partner[:, None]
+        inverse = np.linalg.inv(bordered)[:, :, :size, :size]
+        norms = np.linalg.norm(inverse, 2, axis=(2, 3))
+    except np.linalg.LinAlgError:
+        return np.inf
+    reach = float((norms * (np.abs(leading) - frames.rest * np.abs(levels[:, -1:]))).max())
+    return max(1.0, SPREAD * reach) if np.isfinite(reach) else np.inf
 
 
 def _at_nodes(

@@ -59,6 +59,7 @@ class GroupNumbers:
     coupling: NDArray[np.float64]
 
 
+@np.errstate(all="ignore")  # numbers without a bound are infinite or none, and radii say so
 def group_numbers(
     vectors: NDArray[Any],
     images: NDArray[Any],
@@ -132,11 +133,10 @@ def _decoupled(
     mixed = np.zeros(points)
     turn: list[list[Any]] = [[None] * count for _ in groups]
     open_: list[list[Any]] = [[None] * count for _ in groups]
-    with np.errstate(divide="ignore", invalid="ignore"):
-        for a, b in permutations(range(count), 2):
-            turn[a][b] = parts[a][b] / (means[b] - means[a])
-            open_[a][b] = parts[a][b] + _times(parts[a][a], turn[a][b]) - _times(turn[a][b], parts[b][b])
-            mixed += _size(turn[a][b]) ** 2
+    for a, b in permutations(range(count), 2):
+        turn[a][b] = parts[a][b] / (means[b] - means[a])
+        open_[a][b] = parts[a][b] + _times(parts[a][a], turn[a][b]) - _times(turn[a][b], parts[b][b])
+        mixed += _size(turn[a][b]) ** 2
     coupling = np.zeros((count, count, points))
     diagonal = [parts[a][a] for a in range(count)]
     for a, b in permutations(range(count), 2):

@@ -33,6 +33,12 @@ POOL_SECONDS = 6.0
 """Estimated work left from which worker processes pay. They take seconds to start and to warm up, and
 the estimate is high where the hard part of a map comes first."""
 
+LONGEST_SECONDS = 30.0
+"""Most work in a chunk where it has to be longer, for large bases: smaller ones waste the warm starts."""
+
+GAIN = 4
+"""How many times cheaper than single points whole rows are hoped to be, at least, when first tried."""
+
 SAVE_SECONDS = 5.0
 """Shortest time between two writes of the result file."""
 
@@ -156,12 +162,15 @@ class ScanRun:
             self.rows, self.columns = 1, int(np.clip(points, 1, columns))
         elif result.chunk.points <= FIRST_POINTS:
             # solved densely: a point of a whole row is many times cheaper
-            self.rows, self.columns = LEAST_ROWS, min(columns, MOST_COLUMNS)
+            rough = points / CHUNK_SECONDS * LONGEST_SECONDS * GAIN / LEAST_ROWS
+            self.rows, self.columns = LEAST_ROWS, int(np.clip(rough, 1, min(columns, MOST_COLUMNS)))
         else:
             rows_left = ceil((self.taken.size - int(self.taken.sum())) / columns)
             even = ceil(rows_left / (2 * self.share * cores())) if self.share else rows_left
+            square = points / CHUNK_SECONDS * LONGEST_SECONDS >= LEAST_ROWS**2
             self.rows = max(LEAST_ROWS, min(even, int(points / columns)))
-            self.columns = int(np.clip(points / LEAST_ROWS, 1, columns))
+            least = min(columns, LEAST_ROWS) if square else 1
+            self.columns = int(np.clip(points / LEAST_ROWS, least, columns))
 
     def _with_workers(self) -> None:
         """Share the chunks with worker processes, one on each other core; one that dies is replaced."""
